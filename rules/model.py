@@ -1,0 +1,147 @@
+"""What a site declares to the control core: signals, actuators, rules.
+
+Frozen descriptions and nothing that changes. `gateway.settings` writes them from the user's files; the engine reads
+them once. Quantities are in SI units, times and durations in whole nanoseconds.
+"""
+
+from dataclasses import dataclass
+from enum import Enum, IntEnum, StrEnum
+from typing import NamedTuple
+
+from rules.conditions.tree import Condition
+
+SECOND = 1_000_000_000
+
+
+class Dimension(Enum):
+    """What kind of quantity a value is. The value of a member is its words for people and the SI unit it is held in."""
+
+    LENGTH = ("a length", "m")
+    VOLUME = ("a volume", "m3")
+    SPEED = ("a rate of change of level", "m/s")
+    FLOW = ("a flow", "m3/s")
+    TIME = ("a time", "s")
+    FREQUENCY = ("a frequency", "Hz")
+    CAPACITANCE = ("a capacitance", "F")
+    CURRENT = ("a current", "A")
+    VOLTAGE = ("a voltage", "V")
+    RESISTANCE = ("a resistance", "ohm")
+    CONDUCTANCE = ("a conductance", "S")
+    PRESSURE = ("a pressure", "Pa")
+    DENSITY = ("a density", "kg/m3")
+    TEMPERATURE = ("a temperature", "K")
+    POWER = ("a power", "W")
+    SHARE = ("a percentage", "%")  # held as a fraction: 85 % is 0.85
+    NUMBER = ("a plain number", "")
+
+    @property
+    def words(self) -> str:
+        """The dimension as people read it, with its article."""
+        return str(self.value[0])
+
+    @property
+    def unit(self) -> str:
+        """The unit that values of this dimension are held in."""
+        return str(self.value[1])
+
+
+class Quantity(NamedTuple):
+    """A value with its dimension, in the dimension's SI unit."""
+
+    value: float
+    dimension: Dimension
+
+
+class Fault(IntEnum):
+    """Why a signal has no usable value."""
+
+    NONE = 0  # it has one
+    AWAITED = 1  # nothing has come since the start or since the link was lost
+    SILENT = 2  # it stopped coming
+    FAILED = 3  # it comes, and is not a measurement
+
+
+class Signal(NamedTuple):
+    """A signal at one instant. `value` is a number in SI units, a contact's word, or None when there is a fault."""
+
+    value: float | str | None
+    fault: Fault
+
+
+class Rank(IntEnum):
+    """The rank of a demand; a lower number overrules a higher one. `hand` arrives with the operators' acts."""
+
+    TRIP = 0
+    INTERLOCK = 1
+    AUTO = 3
+
+    @property
+    def word(self) -> str:
+        """The rank as the settings write it."""
+        return self.name.lower()
+
+
+class OnUnknown(StrEnum):
+    """What a rule does when its condition has been unknown for longer than it tolerates."""
+
+    ACT = "act"
+    HOLD = "hold"
+    RELEASE = "release"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Rhythm:
+    """`act for … every …`: in force for the first part of each period while unknown. Both in nanoseconds."""
+
+    act_for: int
+    every: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SignalDecl:
+    """One signal: its full name (`tank.name`, or bare at site level) and what it is.
+
+    A number has a dimension; a contact has its words. Exactly one of the two is given.
+    """
+
+    name: str
+    dimension: Dimension | None = None
+    words: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ActuatorDecl:
+    """One actuator with the states it can be asked for. All of `rest`, `safe` and `prefer` are among `states`."""
+
+    name: str
+    states: tuple[str, ...]
+    rest: str
+    safe: str
+    prefer: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RuleDecl:
+    """One rule: asks `actuator` for `state`, from one condition until another (until None: until `from_` is false)."""
+
+    name: str
+    rank: Rank
+    actuator: str
+    state: str
+    from_: Condition
+    until: Condition | None = None
+    if_unknown: OnUnknown | Rhythm = OnUnknown.RELEASE
+    if_blind: OnUnknown | Rhythm | None = None  # None: as if_unknown
+    unknown_for: int = 0
+    latch: bool = False
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SiteDecl:
+    """Everything the engine needs to know, in file order."""
+
+    signals: tuple[SignalDecl, ...] = ()
+    actuators: tuple[ActuatorDecl, ...] = ()
+    rules: tuple[RuleDecl, ...] = ()
+    startup_grace: int = 60 * SECOND
+    link_tolerance: int = 30 * SECOND
