@@ -1,0 +1,1 @@
+"""Review: why, replay. Drives the plant; has no engine of its own."""

@@ -1,0 +1,1 @@
+"""The language of conditions: text → tree → checked tree → compiled closures."""

@@ -28,7 +28,8 @@ def test_not_mirrors_and_leaves_unknown_alone() -> None:
 
 # Source: 2oo3 = (a·b)+(b·c)+(a·c) in the same logic; the order of the inputs does not matter.
 TWO_OF_THREE = {
-    "TTT": "T", "TTF": "T", "TTU": "T", "TFF": "F", "TFU": "U", "TUU": "U", "FFF": "F", "FFU": "F", "FUU": "U", "UUU": "U",
+    "TTT": "T", "TTF": "T", "TTU": "T", "TFF": "F", "TFU": "U",
+    "TUU": "U", "FFF": "F", "FFU": "F", "FUU": "U", "UUU": "U",
 }  # fmt: skip
 
 
