@@ -33,7 +33,7 @@ TWO_OF_THREE = {
 }  # fmt: skip
 
 
-@pytest.mark.parametrize("votes", itertools.product("TFU", repeat=3))
+@pytest.mark.parametrize("votes", list(itertools.product("TFU", repeat=3)))
 def test_two_of_three_over_all_27_combinations(votes: tuple[str, str, str]) -> None:
     """A vote is never quietly turned into another vote when a member is unknown."""
     a, b, c = (LETTER[vote] for vote in votes)
