@@ -42,6 +42,18 @@ class Commanded(NamedTuple):
     again: bool
 
 
+class ReasonChanged(NamedTuple):
+    """An actuator stays as it is, and for another reason than before; the fields are those of `Commanded`."""
+
+    t: int
+    actuator: str
+    state: str | None
+    rank: Rank | None
+    rule: str | None
+    reason: str
+    overruled: tuple[str, ...]
+
+
 class Noted(NamedTuple):
     """Something that people should know: `about` is the rule or actuator it concerns."""
 
@@ -50,4 +62,4 @@ class Noted(NamedTuple):
     text: str
 
 
-Effect = RuleChanged | Commanded | Noted
+Effect = RuleChanged | Commanded | ReasonChanged | Noted

@@ -5,51 +5,13 @@ them once. Quantities are in SI units, times and durations in whole nanoseconds.
 """
 
 from dataclasses import dataclass
-from enum import Enum, IntEnum, StrEnum
+from enum import IntEnum, StrEnum
 from typing import NamedTuple
 
 from rules.conditions.tree import Condition
+from rules.quantity import Dimension
 
 SECOND = 1_000_000_000
-
-
-class Dimension(Enum):
-    """What kind of quantity a value is. The value of a member is its words for people and the SI unit it is held in."""
-
-    LENGTH = ("a length", "m")
-    VOLUME = ("a volume", "m3")
-    SPEED = ("a rate of change of level", "m/s")
-    FLOW = ("a flow", "m3/s")
-    TIME = ("a time", "s")
-    FREQUENCY = ("a frequency", "Hz")
-    CAPACITANCE = ("a capacitance", "F")
-    CURRENT = ("a current", "A")
-    VOLTAGE = ("a voltage", "V")
-    RESISTANCE = ("a resistance", "ohm")
-    CONDUCTANCE = ("a conductance", "S")
-    PRESSURE = ("a pressure", "Pa")
-    DENSITY = ("a density", "kg/m3")
-    TEMPERATURE = ("a temperature", "K")
-    POWER = ("a power", "W")
-    SHARE = ("a percentage", "%")  # held as a fraction: 85 % is 0.85
-    NUMBER = ("a plain number", "")
-
-    @property
-    def words(self) -> str:
-        """The dimension as people read it, with its article."""
-        return str(self.value[0])
-
-    @property
-    def unit(self) -> str:
-        """The unit that values of this dimension are held in."""
-        return str(self.value[1])
-
-
-class Quantity(NamedTuple):
-    """A value with its dimension, in the dimension's SI unit."""
-
-    value: float
-    dimension: Dimension
 
 
 class Fault(IntEnum):

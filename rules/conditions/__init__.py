@@ -1,1 +1,1 @@
-"""The language of conditions: text → tree → checked tree → compiled closures."""
+"""The language of conditions: text → tree (`parse`) → checked tree (`check`) → closures over the board (`compile`)."""
