@@ -1,0 +1,102 @@
+"""Reading the journal: each call is short, and reads what is committed at that moment. Any thread, its own reader."""
+
+import json
+import zlib
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any, NamedTuple
+
+from gateway.journal.records import EffectRow, EventRow, SnapshotRow, event_of
+from gateway.journal.store import KINDS, open_to_read
+
+CHUNK = 2_000  # rows fetched at a time, so that no read transaction stays open for long
+
+
+class Span(NamedTuple):
+    """A stretch of wall time in ns: from `begin` up to and with `end`."""
+
+    begin: int = 0
+    end: int = 2**63 - 1
+
+
+ALWAYS = Span()
+
+
+class Reader:
+    """A read-only view of one journal file. Raises JournalError when it cannot be opened."""
+
+    def __init__(self, path: Path) -> None:
+        self._connection = open_to_read(path)
+
+    def close(self) -> None:
+        """Close the file."""
+        self._connection.close()
+
+    def last_seq(self) -> int:
+        """Return the number of the newest input, 0 when there is none."""
+        return int(self._connection.execute("SELECT coalesce(max(seq), 0) FROM event").fetchone()[0])
+
+    def seq_at(self, at: int) -> int:
+        """Return the number of the newest input up to the wall time `at`, 0 when there is none."""
+        query = "SELECT seq FROM event WHERE at <= ? ORDER BY seq DESC LIMIT 1"
+        row = self._connection.execute(query, (at,)).fetchone()
+        return int(row[0]) if row else 0
+
+    def last_snapshot(self, upto: int | None = None) -> SnapshotRow | None:
+        """Return the newest snapshot, after no input later than the one numbered `upto`."""
+        query = "SELECT seq, at, digest, state FROM snapshot WHERE seq <= ? ORDER BY seq DESC LIMIT 1"
+        row = self._connection.execute(query, (2**63 - 1 if upto is None else upto,)).fetchone()
+        if row is None:
+            return None
+        seq, at, digest, state = row
+        return SnapshotRow(seq, at, digest, json.loads(zlib.decompress(state)))
+
+    def settings(self, digest: str) -> dict[str, str] | None:
+        """Return the texts of the settings with this digest."""
+        row = self._connection.execute("SELECT texts FROM settings WHERE digest = ?", (digest,)).fetchone()
+        return None if row is None else json.loads(row[0])
+
+    def newest_settings(self) -> str | None:
+        """Return the digest of the settings that came into force last."""
+        row = self._connection.execute("SELECT digest FROM settings ORDER BY at DESC, id DESC LIMIT 1").fetchone()
+        return None if row is None else str(row[0])
+
+    def events(self, after: int = 0, upto: int | None = None) -> Iterator[EventRow]:
+        """Yield inputs in order: numbered above `after`, up to and with `upto`."""
+        last = self.last_seq() if upto is None else upto
+        query = (
+            "SELECT e.seq, e.t, e.at, e.kind, topic.name, e.payload, e.flags, e.data FROM event e"
+            " LEFT JOIN topic ON topic.id = e.topic WHERE e.seq > ? AND e.seq <= ? ORDER BY e.seq LIMIT ?"
+        )
+        while after < last:
+            rows = self._connection.execute(query, (after, last, CHUNK)).fetchall()
+            for seq, t, at, kind, topic, payload, flags, data in rows:
+                yield EventRow(seq, at, event_of(t, KINDS[kind], topic, payload, flags, data))
+            if not rows:
+                return
+            after = rows[-1][0]
+
+    def effects(
+        self, *, subject: str | None = None, kinds: tuple[str, ...] = (), span: Span = ALWAYS, newest: int = -1
+    ) -> list[EffectRow]:
+        """Return effects, oldest first: the `newest` ones (-1: all) of a subject and of kinds, within a span."""
+        where, given = ["at BETWEEN ? AND ?"], [*span]
+        values: list[Any] = list(given)
+        if subject is not None:
+            where.append("subject = ?")
+            values.append(subject)
+        if kinds:
+            where.append(f"kind IN ({', '.join('?' * len(kinds))})")
+            values.extend(kinds)
+        query = (
+            "SELECT seq, t, at, kind, subject, data FROM effect WHERE "  # noqa: S608 - only placeholders are put in
+            + " AND ".join(where)
+            + " ORDER BY id DESC LIMIT ?"
+        )
+        rows = self._connection.execute(query, (*values, newest)).fetchall()
+        return [EffectRow(*facts, json.loads(data)) for *facts, data in reversed(rows)]
+
+
+def read_or_none(path: Path) -> Reader | None:
+    """Return a reader, or None when there is no journal yet."""
+    return Reader(path) if path.exists() else None
