@@ -94,7 +94,9 @@ class Reader:
             + " ORDER BY id DESC LIMIT ?"
         )
         rows = self._connection.execute(query, (*values, newest)).fetchall()
-        return [EffectRow(*facts, json.loads(data)) for *facts, data in reversed(rows)]
+        return [
+            EffectRow(seq, t, at, kind, about, json.loads(data)) for seq, t, at, kind, about, data in reversed(rows)
+        ]
 
 
 def read_or_none(path: Path) -> Reader | None:

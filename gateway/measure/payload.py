@@ -1,0 +1,136 @@
+"""From the bytes of a message to one number or one word, or to the reason why not. Total: any bytes end in either.
+
+A plain number is text; inside JSON it is found by a pointer (RFC 6901). Nothing is guessed: a string where a number
+belongs, NaN, an infinity, a number too large, are refused.
+"""
+
+import json
+import math
+import re
+from typing import Any, NoReturn
+
+LONGEST = 65_536  # bytes; a reading is never that long, and reading more would only take time
+LONGEST_NUMBER = 32  # characters: more digits than any sensor has
+
+_NUMBER = re.compile(rb"[-+]?\d+(?:\.\d+)?(?:[eE][-+]?\d+)?", re.ASCII)
+_BLANK = b" \t\r\n"
+
+
+class PayloadError(ValueError):
+    """A payload that holds no reading; the text says why, for people."""
+
+
+class Pointer:
+    """A JSON Pointer, taken apart once. Source: RFC 6901.
+
+    Raises ValueError, with a sentence, for text that is no pointer.
+    """
+
+    __slots__ = ("_parts", "text")
+
+    def __init__(self, text: str) -> None:
+        if text and not text.startswith("/"):
+            raise ValueError(f"a pointer begins with '/', unlike '{text}'")
+        if re.search(r"~(?![01])", text):
+            raise ValueError(f"in a pointer, '~' is followed by 0 or 1, unlike in '{text}'")
+        self.text = text
+        self._parts = tuple(part.replace("~1", "/").replace("~0", "~") for part in text.split("/")[1:])
+
+    def find(self, document: Any) -> Any:
+        """Return what the pointer points to in `document`; raise PayloadError when it finds nothing."""
+        for part in self._parts:
+            if isinstance(document, dict) and part in document:
+                document = document[part]
+            elif isinstance(document, list) and re.fullmatch(r"0|[1-9]\d{0,8}", part) and int(part) < len(document):
+                document = document[int(part)]
+            else:
+                raise PayloadError(f"there is no '{self.text}' in it")
+        return document
+
+
+def read_number(payload: bytes, pointer: Pointer | None) -> float:
+    """Return the number that `payload` holds; raise PayloadError with the reason when it holds none."""
+    if pointer is None:
+        return _plain_number(payload)
+    value = pointer.find(_document(payload))
+    if isinstance(value, bool) or not isinstance(value, int | float):
+        raise PayloadError(f"'{pointer.text}' holds {_kind(value)} where a number belongs")
+    try:
+        number = float(value)
+    except OverflowError:
+        number = math.inf
+    return _finite(number)
+
+
+def read_word(payload: bytes, pointer: Pointer | None) -> str:
+    """Return the word that `payload` holds; `1`, `"1"` and text `1` are the same word."""
+    if pointer is not None:
+        return _word(pointer.find(_document(payload)), pointer.text)
+    text = _text(payload).strip()
+    if text.startswith('"'):
+        return _word(_document(payload), "it")
+    return text
+
+
+def _plain_number(payload: bytes) -> float:
+    text = payload.strip(_BLANK) if len(payload) <= LONGEST else _too_long(payload)
+    if len(text) <= LONGEST_NUMBER and _NUMBER.fullmatch(text):
+        return _finite(float(text))
+    if not text:
+        raise PayloadError("it is empty")
+    raise PayloadError(f"it is no plain number: '{text[:LONGEST_NUMBER].decode('utf-8', 'replace')}'")
+
+
+def _finite(number: float) -> float:
+    if not math.isfinite(number):
+        raise PayloadError("the number is too large")
+    return number
+
+
+def _too_long(payload: bytes) -> NoReturn:
+    raise PayloadError(f"it has {len(payload)} bytes; {LONGEST} are the most that are read")
+
+
+def _text(payload: bytes) -> str:
+    if len(payload) > LONGEST:
+        _too_long(payload)
+    try:
+        return payload.decode()
+    except UnicodeDecodeError:
+        raise PayloadError("it is not UTF-8 text") from None
+
+
+def _refuse_constant(name: str) -> NoReturn:
+    raise PayloadError(f"{name} is no number")
+
+
+_decode = json.JSONDecoder(parse_constant=_refuse_constant).decode
+
+
+def _document(payload: bytes) -> Any:
+    text = _text(payload)
+    try:
+        return _decode(text)
+    except PayloadError:
+        raise
+    except (ValueError, RecursionError):
+        raise PayloadError("it is empty" if not text.strip() else "it is not JSON") from None
+
+
+def _kind(value: Any) -> str:
+    kinds = {bool: "true or false", str: "a string", list: "a list", dict: "an object", type(None): "null"}
+    return kinds.get(type(value), "a number")
+
+
+def _word(value: Any, where: str) -> str:
+    match value:
+        case bool():
+            return "true" if value else "false"
+        case str():
+            return value
+        case int():
+            return str(value) if abs(value) < 10**LONGEST_NUMBER else "too large"
+        case float():
+            return str(int(value)) if value.is_integer() and abs(value) < 1e15 else repr(value)
+        case _:
+            raise PayloadError(f"'{where}' holds {_kind(value)} where a word belongs")
