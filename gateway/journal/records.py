@@ -64,7 +64,7 @@ def told(event: Event) -> tuple[str, str | None]:
     return kind, json.dumps(facts, sort_keys=True) if facts else None
 
 
-def event_of(  # noqa: PLR0917 - the columns of a row, in their order
+def event_of(
     t: int, kind: str, topic: str | None, payload: bytes | None, flags: int, data: str | None
 ) -> Event:
     """Return the input that a row holds."""

@@ -11,7 +11,7 @@ from dataclasses import dataclass, field
 from typing import Any, NamedTuple
 
 from gateway.measure.judge import FAULTS, Happens, Judge, State
-from gateway.measure.payload import Pointer, PayloadError, read_number, read_word
+from gateway.measure.payload import PayloadError, Pointer, read_number, read_word
 from gateway.measure.sensing.method import Converted, Method
 from gateway.measure.status import Status
 from rules.model import Fault, Signal

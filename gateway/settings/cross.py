@@ -1,0 +1,264 @@
+"""What only shows when the whole site is read: names that stand for nothing, topics that collide, levels out of order.
+
+Each check yields complaints with their place; none stops at the first.
+"""
+
+from collections.abc import Iterator, Mapping
+from typing import Any
+
+from gateway.measure.sensing import SENSES
+from gateway.settings.assemble import ALIVE_WORDS, choice_of, condition_of, demand_of, method_of
+from gateway.settings.complaint import Complaint
+from gateway.settings.load import SITE_FILE
+from gateway.settings.models import Actuator, Common, Rule, Sensor, Site, TankFile
+from gateway.settings.names import Names, TankScope, full, parts
+from gateway.settings.units import scale
+from gateway.settings.yaml_reader import Node
+from rules.conditions.errors import ConditionError
+from rules.quantity import Dimension
+
+Path = tuple[str | int, ...]
+
+
+class _Place:
+    """One file of the site, for complaints about it."""
+
+    def __init__(self, file: str, node: Node) -> None:
+        self.file = file
+        self.node = node
+
+    def say(self, path: Path, message: str, *, column: int = 0) -> Complaint:
+        """Return a complaint at the value under `path`; `column` counts from 1 within it, for text without quotes."""
+        line, start = self.node.place(*path)
+        return Complaint(self.file, line, start + max(0, column - 1), message)
+
+
+def cross_check(site: Site, nodes: Mapping[str, Node]) -> list[Complaint]:
+    """Return every complaint about the site as a whole."""
+    of_tank = {node.value["tank"].value: _Place(file, node) for file, node in nodes.items() if file != SITE_FILE}
+    places = [_Place(SITE_FILE, nodes[SITE_FILE]), *(of_tank[tank] for tank in site.tanks)]
+    complaints: list[Complaint] = []
+    for (_, part), place in zip(parts(site), places, strict=True):
+        if isinstance(part, TankFile):
+            complaints += _tank(part, place)
+        complaints += _sensors(part, place)
+        complaints += _actuators(part, place)
+    complaints += _topics(site, places)
+    complaints += _names(site, places)
+    # Rules are read only where what they name is sound; else one slip would be told many times over.
+    return complaints or list(_rules(site, places))
+
+
+def _tank(tank: TankFile, place: _Place) -> Iterator[Complaint]:
+    if tank.shape is not None and tank.brim is not None and tank.brim > tank.shape.height:
+        yield place.say(("brim",), f"the brim is above the tank's height of {tank.shape.height:g} m")
+    if tank.brim is not None and tank.suction is not None and tank.suction >= tank.brim:
+        yield place.say(("suction",), f"the suction level is not below the brim of {tank.brim:g} m")
+    if tank.brim is not None and tank.brim <= 0:
+        yield place.say(("brim",), "the brim is above the lowest inside point")
+    if tank.level is not None and tank.level not in tank.sensors:
+        known = ", ".join(tank.sensors) or "none"
+        yield place.say(("level",), f"`{tank.level}` is no sensor of this tank; known: {known}")
+    elif tank.level is not None and tank.sensors[tank.level].senses == "contact":
+        yield place.say(("level",), f"`{tank.level}` is a contact and gives no level")
+    for name in set(tank.sensors) & set(tank.actuators):
+        yield place.say(("actuators", name), f"`{name}` is a sensor of this tank already")
+
+
+# ---- sensors ------------------------------------------------------------------------------------------------
+
+
+def _sensors(part: Common, place: _Place) -> Iterator[Complaint]:
+    owner = part if isinstance(part, TankFile) else None
+    for name, sensor in part.sensors.items():
+        path: Path = ("sensors", name)
+        yield from _timing(sensor, place, path)
+        if sensor.senses == "contact":
+            yield from _contact(sensor, place, path)
+            continue
+        yield from _unit_fits(sensor, place, path)
+        yield from _bounds(sensor, place, path)
+        try:
+            method_of(sensor, owner)
+        except ValueError as problem:
+            yield place.say((*path, "senses"), str(problem))
+
+
+def _timing(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
+    if sensor.on_change is None and sensor.expect_every is None:
+        message = "`expect_every` is missing; a sensor that sends only changes has `on_change` instead"
+        yield place.say(path, message)
+    if sensor.on_change is not None and sensor.expect_every is not None:
+        yield place.say((*path, "expect_every"), "a sensor that sends only changes is not expected to send often")
+    if sensor.expect_every == 0:
+        yield place.say((*path, "expect_every"), "expected more than no time")
+    if sensor.on_change is not None:
+        alive: Path = (*path, "on_change", "alive", "payloads")
+        for word in set(sensor.on_change.alive.payloads) - set(ALIVE_WORDS):
+            yield place.say((*alive, word), f"`{word}` is neither yes nor no")
+        if "yes" not in sensor.on_change.alive.payloads:
+            yield place.say(alive, "`yes` is missing")
+
+
+def _contact(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
+    if sensor.payloads is not None and len(set(sensor.payloads.values())) < len(sensor.payloads):
+        yield place.say((*path, "payloads"), "two words have the same payload")
+    for key in ("calibration", "span", "unit", "range"):
+        if getattr(sensor, key) is not None:
+            yield place.say((*path, key), f"a contact has no {key}")
+
+
+def _unit_fits(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
+    wanted = SENSES[sensor.senses].raw
+    kinds = " or ".join(dimension.words for dimension in wanted)
+    if sensor.unit is not None and scale(sensor.unit)[1] not in wanted:
+        yield place.say((*path, "unit"), f"`{sensor.unit}` is no unit of {kinds}")
+    for index, bound in enumerate(sensor.range or ()):
+        if bound.dimension not in wanted:
+            yield place.say((*path, "range", index), f"this is {bound.dimension.words}; expected {kinds}")
+    if sensor.payloads is not None:
+        yield place.say((*path, "payloads"), "only a contact has payloads")
+
+
+def _bounds(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
+    for key in ("range", "span"):
+        pair = getattr(sensor, key)
+        if pair is None:
+            continue
+        if len(pair) != 2:
+            yield place.say((*path, key), "expected two values: `[low, high]`")
+        elif key == "range" and not pair[0].value < pair[1].value:
+            yield place.say((*path, key), "the first value is the lower one")
+        elif key == "span" and any(value.dimension is not Dimension.LENGTH for value in pair):
+            yield place.say((*path, key), "a span that is not a length is not yet supported")
+        elif pair[0].value == pair[1].value:
+            yield place.say((*path, key), "the two values are the same")
+    if sensor.span is not None and sensor.senses != "current":
+        yield place.say((*path, "span"), f"`{sensor.senses}` has no span")
+
+
+# ---- actuators and topics -----------------------------------------------------------------------------------
+
+
+def _actuators(part: Common, place: _Place) -> Iterator[Complaint]:
+    for name, actuator in part.actuators.items():
+        path: Path = ("actuators", name)
+        if len(set(actuator.states)) < len(actuator.states):
+            yield place.say((*path, "states"), "a state stands here twice")
+        for key in ("rest", "safe", "prefer"):
+            state = getattr(actuator, key)
+            if state is not None and state not in actuator.states:
+                yield place.say((*path, key), f"`{state}` is none of its states: {', '.join(actuator.states)}")
+        yield from _payloads(actuator, place, (*path, "command", "payloads"))
+
+
+def _payloads(actuator: Actuator, place: _Place, path: Path) -> Iterator[Complaint]:
+    payloads = actuator.command.payloads
+    if payloads is None:
+        return
+    for state in actuator.states:
+        if state not in payloads:
+            yield place.say(path, f"the payload for `{state}` is missing")
+    for word in payloads:
+        if word not in actuator.states:
+            yield place.say((*path, word), f"`{word}` is none of its states: {', '.join(actuator.states)}")
+    if len(set(payloads.values())) < len(payloads):
+        yield place.say(path, "two states have the same payload")
+
+
+def _topics(site: Site, places: list[_Place]) -> Iterator[Complaint]:
+    """Complain of a command's topic that is not one actuator's alone, and of our own topics used by others."""
+    owners: dict[str, str] = {}
+    for (tank, part), place in zip(parts(site), places, strict=True):
+        for name, actuator in part.actuators.items():
+            topic, path = actuator.command.topic, ("actuators", name, "command", "topic")
+            if topic in owners:
+                yield place.say(path, f"`{topic}` commands {owners[topic]} already")
+            owners[topic] = full(tank, name)
+            yield from _own(site, place, path, topic)
+    for (_, part), place in zip(parts(site), places, strict=True):
+        for name, sensor in part.sensors.items():
+            heard: dict[Path, str] = {("sensors", name, "topic"): sensor.topic}
+            if sensor.on_change is not None:
+                heard["sensors", name, "on_change", "alive", "topic"] = sensor.on_change.alive.topic
+            for where, topic in heard.items():
+                if topic in owners:
+                    message = f"`{topic}` is where {owners[topic]} is commanded; the gateway would hear itself"
+                    yield place.say(where, message)
+                yield from _own(site, place, where, topic)
+
+
+def _own(site: Site, place: _Place, path: Path, topic: str) -> Iterator[Complaint]:
+    root = site.publish_under
+    if topic == root or topic.startswith(f"{root}/"):
+        yield place.say(path, f"`{root}/…` are the gateway's own topics")
+
+
+def _names(site: Site, places: list[_Place]) -> Iterator[Complaint]:
+    for name in {*site.file.sensors, *site.file.actuators} & set(site.tanks):
+        yield places[0].say(("sensors" if name in site.file.sensors else "actuators", name), f"`{name}` is a tank")
+    for name in set(site.file.sensors) & set(site.file.actuators):
+        yield places[0].say(("actuators", name), f"`{name}` is a sensor already")
+    seen: dict[str, str] = {}
+    for name in site.tanks:
+        if name.lower() in seen:
+            yield places[0].say((), f"the tanks `{seen[name.lower()]}` and `{name}` differ in capitals only")
+        seen[name.lower()] = name
+
+
+# ---- rules --------------------------------------------------------------------------------------------------
+
+
+def _rules(site: Site, places: list[_Place]) -> Iterator[Complaint]:
+    names = Names(site)
+    trips: dict[str, tuple[str, str]] = {}
+    for (tank, part), place in zip(parts(site), places, strict=True):
+        scope = TankScope(names, tank)
+        for name, rule in part.rules.items():
+            path: Path = ("rules", name)
+            if not name.strip() or len(name) > 80 or "." in name or "/" in name or not name.isprintable():
+                yield place.say(path, "a rule's name is a few words, without `.` and `/`")
+            yield from _conditions(rule, place, path, scope)
+            yield from _unknown(rule, place, path)
+            yield from _demand(rule, place, path, scope, trips, full(tank, name))
+
+
+def _conditions(rule: Rule, place: _Place, path: Path, scope: TankScope) -> Iterator[Complaint]:
+    for key, text in (("from", rule.from_), ("until", rule.until)):
+        if text is None:
+            continue
+        try:
+            condition_of(text, scope)
+        except ConditionError as problem:
+            node: Any = place.node
+            for step in (*path, key):
+                node = node.child(step)
+            yield place.say((*path, key), problem.message, column=problem.column + node.quoted)
+
+
+def _unknown(rule: Rule, place: _Place, path: Path) -> Iterator[Complaint]:
+    if rule.rank != "auto" and rule.if_unknown is None:
+        yield place.say(path, f"`if_unknown` is missing; of a {rule.rank} it must be said: act, hold or release")
+    if rule.rank == "auto" and rule.latch:
+        yield place.say((*path, "latch"), "only a trip or an interlock latches")
+    for key in ("if_unknown", "if_blind"):
+        try:
+            choice_of(getattr(rule, key) or "release")
+        except ValueError as problem:
+            yield place.say((*path, key), str(problem))
+
+
+def _demand(
+    rule: Rule, place: _Place, path: Path, scope: TankScope, trips: dict[str, tuple[str, str]], name: str
+) -> Iterator[Complaint]:
+    try:
+        actuator, state = demand_of(rule.demand, scope)
+    except ValueError as problem:
+        yield place.say((*path, "demand"), str(problem))
+        return
+    if rule.rank != "trip":
+        return
+    other, asked = trips.setdefault(actuator.name, (name, state))
+    if asked != state:
+        message = f"the trip '{other}' asks {actuator.name} for `{asked}`; two trips cannot ask for different states"
+        yield place.say((*path, "demand"), message)

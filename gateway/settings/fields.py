@@ -1,0 +1,124 @@
+"""The kinds of values that settings hold: each reads what a user wrote into SI units, or says what is wrong with it."""
+
+import re
+from typing import Annotated, Any
+from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
+
+from pydantic import BaseModel, BeforeValidator, ConfigDict
+
+from gateway.measure.payload import Pointer
+from gateway.settings.units import SECOND, read_as, scale
+from rules.conditions.parse import RESERVED
+from rules.quantity import Dimension, Quantity
+
+_NAME = re.compile(r"[A-Za-z][A-Za-z0-9-]{0,63}")
+
+
+class Part(BaseModel):
+    """A mapping of the settings. Unknown keys are complaints; keys of `LATER` are refused by name."""
+
+    model_config = ConfigDict(extra="forbid", strict=True, frozen=True, arbitrary_types_allowed=True)
+
+
+def _dimension(*wanted: Dimension) -> BeforeValidator:
+    return BeforeValidator(lambda value: read_as(value, *wanted).value)
+
+
+def _positive(value: float) -> float:
+    if not value > 0:
+        raise ValueError("expected more than nothing")
+    return value
+
+
+def _duration(value: object) -> int:
+    seconds = read_as(value, Dimension.TIME).value
+    if seconds < 0:
+        raise ValueError("a time cannot be negative")
+    return round(seconds * SECOND)
+
+
+def name(value: object) -> str:
+    """Return a name that can stand in conditions and topics."""
+    if not isinstance(value, str) or not _NAME.fullmatch(value):
+        raise ValueError(f"`{value}` is not a name; a name has letters, digits and `-`, and begins with a letter")
+    if value.lower() in RESERVED:
+        raise ValueError(f"`{value}` is a word of the condition language and cannot be a name")
+    return value
+
+
+def _word(value: object) -> str:
+    if isinstance(value, str) and value and not re.search(r"\s", value):
+        return value
+    raise ValueError(f"`{value}` is not one word")
+
+
+def _topic(value: object) -> str:
+    if not isinstance(value, str) or not value:
+        raise ValueError("expected a topic such as `farm/tank-1/probe`")
+    if "+" in value or "#" in value or "\0" in value:
+        raise ValueError(f"`{value}` holds a wildcard; name one topic")
+    if len(value.encode()) > 65_535:  # MQTT 5, 4.7.3
+        raise ValueError("a topic has at most 65,535 bytes")
+    return value
+
+
+def payload(value: object) -> str:
+    """Return a payload as text; a number or a truth value counts as its text."""
+    if isinstance(value, bool):
+        return "true" if value else "false"
+    if isinstance(value, str | int | float):
+        return str(value)
+    raise ValueError("expected a payload: text or a number")
+
+
+def _pointer(value: object) -> Pointer:
+    if not isinstance(value, str):
+        raise ValueError("expected a JSON Pointer such as `/hz`")
+    return Pointer(value)
+
+
+def _unit(value: object) -> str:
+    if not isinstance(value, str):
+        raise ValueError("expected a unit such as `Hz`")
+    scale(value)
+    return value
+
+
+def _zone(value: object) -> str:
+    try:
+        ZoneInfo(str(value))
+    except (ZoneInfoNotFoundError, ValueError, OSError):
+        raise ValueError(f"`{value}` is not a time zone; expected one such as `Europe/Vienna`") from None
+    return str(value)
+
+
+def _text(value: object) -> str:
+    if not isinstance(value, str):
+        raise ValueError(f"`{value}` is not text; put it in quotation marks if it is meant as text")
+    return value
+
+
+def _any_quantity(value: object) -> Quantity:
+    return read_as(value, *(dimension for dimension in Dimension if dimension is not Dimension.NUMBER))
+
+
+Length = Annotated[float, _dimension(Dimension.LENGTH)]
+Size = Annotated[Length, BeforeValidator(lambda value: _positive(read_as(value, Dimension.LENGTH).value) and value)]
+Duration = Annotated[int, BeforeValidator(_duration)]
+AnyQuantity = Annotated[Quantity, BeforeValidator(_any_quantity)]
+Name = Annotated[str, BeforeValidator(name)]
+Word = Annotated[str, BeforeValidator(_word)]
+Topic = Annotated[str, BeforeValidator(_topic)]
+PointerText = Annotated[Pointer, BeforeValidator(_pointer)]
+Unit = Annotated[str, BeforeValidator(_unit)]
+Zone = Annotated[str, BeforeValidator(_zone)]
+Text = Annotated[str, BeforeValidator(_text)]
+
+
+def _payloads(value: Any) -> dict[str, str]:
+    if not isinstance(value, dict) or not value:
+        raise ValueError('expected words with their payloads, such as `{on: "1", off: "0"}`')
+    return {_word(word): payload(text) for word, text in value.items()}
+
+
+Payloads = Annotated[dict[str, str], BeforeValidator(_payloads)]

@@ -1,0 +1,234 @@
+"""From a site's folder to its settings, or to every complaint about it at once."""
+
+import difflib
+import hashlib
+import json
+import types
+import typing
+from collections.abc import Mapping
+from pathlib import Path
+from typing import Any
+
+from pydantic import BaseModel, ValidationError
+
+from gateway.errors import InputError
+from gateway.settings.complaint import Complaint, SettingsError
+from gateway.settings.models import Common, Site, SiteFile, TankFile
+from gateway.settings.yaml_reader import LONGEST_FILE, Node, read_yaml
+
+SITE_FILE = "site.yaml"
+
+
+def load(path: str | Path) -> Site:
+    """Return the settings of the site whose folder, or whose `site.yaml`, is `path`.
+
+    Raises InputError when there is nothing to read, SettingsError with every complaint when it cannot be used.
+    """
+    folder = Path(path)
+    folder = folder.parent if folder.name == SITE_FILE else folder
+    if not (folder / SITE_FILE).is_file():
+        raise InputError(f"{folder}: there is no {SITE_FILE} here; a site is a folder that holds one")
+    return load_texts(_texts(folder), folder)
+
+
+def load_texts(texts: Mapping[str, str], folder: Path) -> Site:
+    """Return the settings that `texts` (relative file name → text) hold; as `load`, for texts kept elsewhere."""
+    complaints: list[Complaint] = []
+    files = {file: _Read(file, text, complaints) for file, text in texts.items()}
+    site_file = files[SITE_FILE].model(SiteFile, complaints) if SITE_FILE in files else None
+    read = {file: files[file].model(TankFile, complaints) for file in files if file != SITE_FILE}
+    tanks = _by_name(read, files, complaints)
+    if complaints or not isinstance(site_file, SiteFile):
+        raise SettingsError(complaints)
+    site = Site(file=site_file, tanks=tanks, folder=folder, texts=dict(texts), digest=digest(texts))
+    from gateway.settings.cross import cross_check  # noqa: PLC0415 - it needs this module's places
+
+    complaints += cross_check(site, {file: one.node for file, one in files.items() if one.node is not None})
+    if complaints:
+        raise SettingsError(complaints)
+    return site
+
+
+def digest(texts: Mapping[str, str]) -> str:
+    """Return the SHA-256 of the texts with their names, in file order; the same settings have the same digest."""
+    return hashlib.sha256(json.dumps(list(texts.items())).encode()).hexdigest()
+
+
+# ---- files --------------------------------------------------------------------------------------------------
+
+
+def _texts(folder: Path) -> dict[str, str]:
+    """Return the texts of the site's files, `site.yaml` first, then the tanks in the order of their path's bytes."""
+    texts = {SITE_FILE: _text(folder / SITE_FILE)}
+    for file in sorted(_tank_files(folder, texts[SITE_FILE]), key=lambda path: path.encode()):
+        texts[file] = _text(folder / file)
+    return texts
+
+
+def _text(path: Path) -> str:
+    try:
+        with path.open("rb") as file:
+            return file.read(LONGEST_FILE * 4 + 1).decode("utf-8-sig")
+    except UnicodeDecodeError:
+        raise SettingsError([Complaint(path.name, 1, 1, "the file is not UTF-8 text")]) from None
+    except OSError as problem:
+        raise InputError(f"{path}: cannot be read: {problem.strerror}") from None
+
+
+def _tank_files(folder: Path, site_text: str) -> set[str]:
+    node = read_yaml(SITE_FILE, site_text, [])
+    patterns = node.plain().get("tanks", ["tanks/*.yaml"]) if node else []
+    found: set[str] = set()
+    for pattern in patterns if isinstance(patterns, list) else []:
+        if isinstance(pattern, str) and pattern and not pattern.startswith("/") and ".." not in pattern:
+            found |= {path.relative_to(folder).as_posix() for path in folder.glob(pattern) if path.is_file()}
+    return found - {SITE_FILE}
+
+
+def _by_name(
+    read: Mapping[str, BaseModel | None], files: Mapping[str, "_Read"], complaints: list[Complaint]
+) -> dict[str, TankFile]:
+    tanks: dict[str, TankFile] = {}
+    for file, tank in read.items():
+        if not isinstance(tank, TankFile):
+            continue
+        if tank.tank in tanks:
+            complaints.append(files[file].complaint(("tank",), f"there is a tank `{tank.tank}` already"))
+        tanks[tank.tank] = tank
+    return tanks
+
+
+class _Read:
+    """One file as read."""
+
+    def __init__(self, file: str, text: str, complaints: list[Complaint]) -> None:
+        self.file = file
+        self.node = read_yaml(file, text, complaints)
+        if self.node is not None:
+            _merge_likes(file, self.node, complaints)
+
+    def complaint(self, path: tuple[str | int, ...], message: str, *, at_key: bool = False) -> Complaint:
+        assert self.node is not None  # noqa: S101 - only asked of a file that has been read
+        place = self.node.key_place(*path) if at_key else self.node.place(*path)
+        return Complaint(self.file, *place, message)
+
+    def model(self, kind: type[Common], complaints: list[Complaint]) -> BaseModel | None:
+        """Return the file as a model, or None with what is wrong added to `complaints`."""
+        if self.node is None:
+            return None
+        try:
+            return kind.model_validate(self.node.plain())
+        except ValidationError as problem:
+            complaints.extend(self._translated(kind, error) for error in problem.errors(include_url=False))
+            return None
+
+    def _translated(self, kind: type[BaseModel], error: Any) -> Complaint:
+        """Return one of pydantic's errors in our words, at its place."""
+        path = tuple(step for step in error["loc"] if step != "[key]")
+        last = path[-1] if path else ""
+        match error["type"]:
+            case "extra_forbidden":
+                return self.complaint(path, _unknown_key(model_at(kind, path[:-1]), str(last)), at_key=True)
+            case "missing":
+                return self.complaint(path[:-1], f"`{last}` is missing")
+            case "value_error":
+                return self.complaint(path, str(error["ctx"]["error"]), at_key="[key]" in error["loc"])
+            case _:
+                return self.complaint(path, f"`{_shown(error['input'])}`: {_expectation(error)}")
+
+
+def _shown(value: Any) -> str:
+    text = str(value)
+    return text if len(text) <= 40 else f"{text[:40]}…"
+
+
+_EXPECTATIONS = {
+    "bool_type": "expected true or false",
+    "int_type": "expected a whole number",
+    "float_type": "expected a number",
+    "string_type": "expected text",
+    "list_type": "expected a list: `[…]`",
+    "dict_type": "expected `key: value` lines",
+    "model_type": "expected `key: value` lines",
+    "model_attributes_type": "expected `key: value` lines",
+    "tuple_type": "expected a pair: `[raw, level]`",
+    "too_short": "expected more",
+}
+
+
+def _expectation(error: Any) -> str:
+    if error["type"] == "literal_error":
+        return f"expected {error['ctx']['expected'].replace(chr(39), '')}"
+    return _EXPECTATIONS.get(error["type"], str(error["msg"]))
+
+
+def _unknown_key(model: type[BaseModel] | None, key: str) -> str:
+    """Return the complaint about a key that a part does not have."""
+    if key in getattr(model, "LATER", ()):
+        return f"`{key}` is not yet supported"
+    fields = {} if model is None else model.model_fields
+    known = [field.alias or name for name, field in fields.items()]
+    nearest = difflib.get_close_matches(key, known, n=1)
+    return f"`{key}` is not known here; " + (
+        f"did you mean `{nearest[0]}`?" if nearest else f"known: {', '.join(known)}"
+    )
+
+
+def model_at(model: type[BaseModel] | None, path: tuple[str | int, ...]) -> type[BaseModel] | None:
+    """Return the part of the settings that stands at `path` within `model`."""
+    annotation: Any = model
+    for step in path:
+        if isinstance(annotation, type) and issubclass(annotation, BaseModel):
+            by_alias = {field.alias or name: field for name, field in annotation.model_fields.items()}
+            field = by_alias.get(str(step))
+            annotation = field.annotation if field else None
+        elif typing.get_origin(annotation) is dict:
+            annotation = typing.get_args(annotation)[1]
+        else:
+            return None
+        if isinstance(annotation, types.UnionType):
+            annotation = next((part for part in typing.get_args(annotation) if part is not type(None)), None)
+    return annotation if isinstance(annotation, type) and issubclass(annotation, BaseModel) else None
+
+
+# ---- like ---------------------------------------------------------------------------------------------------
+
+
+def _merge_likes(file: str, root: Node, complaints: list[Complaint]) -> None:
+    """Let each actuator with `like` take over, deeply, what the one it names has and it has not."""
+    actuators = root.child("actuators")
+    if actuators is None or not isinstance(actuators.value, dict):
+        return
+    done: set[str] = set()
+    for name in actuators.value:
+        _merge_like(file, actuators, name, (name,), done, complaints)
+
+
+def _merge_like(
+    file: str, actuators: Node, name: str, chain: tuple[str, ...], done: set[str], complaints: list[Complaint]
+) -> None:
+    own = actuators.value[name]
+    if name in done or not isinstance(own.value, dict) or "like" not in own.value:
+        return
+    done.add(name)
+    like: Node = own.value.pop("like")
+    other = actuators.child(str(like.value))
+    if other is None or str(like.value) in chain:
+        nearest = difflib.get_close_matches(str(like.value), [one for one in actuators.value if one != name], n=1)
+        hint = f"; did you mean `{nearest[0]}`?" if nearest else ""
+        message = f"`like` names another actuator of this file, not `{like.value}`{hint}"
+        complaints.append(Complaint(file, like.line, like.column, message))
+        return
+    _merge_like(file, actuators, str(like.value), (*chain, str(like.value)), done, complaints)
+    _merge(own, other)
+
+
+def _merge(own: Node, other: Node) -> None:
+    if not isinstance(own.value, dict) or not isinstance(other.value, dict):
+        return
+    for key, node in other.value.items():
+        if key in own.value:
+            _merge(own.value[key], node)
+        else:
+            own.value[key] = node
+            own.keys[key] = (own.line, own.column)

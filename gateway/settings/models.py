@@ -1,0 +1,305 @@
+"""What a user can write, key by key. Values are in SI units and nanoseconds once read.
+
+`LATER` names, for each part, the keys that have their place and arrive in a later version: they are refused by name.
+"""
+
+from pathlib import Path
+from typing import Annotated, Any, ClassVar, Literal
+from urllib.parse import urlsplit
+
+from pydantic import BeforeValidator, Field, model_validator
+
+from gateway.measure.sensing import SENSES
+from gateway.measure.shapes import FORMS
+from gateway.settings.fields import (
+    AnyQuantity,
+    Duration,
+    Length,
+    Name,
+    Part,
+    Payloads,
+    PointerText,
+    Size,
+    Text,
+    Topic,
+    Unit,
+    Word,
+    Zone,
+)
+from gateway.settings.units import SECOND
+
+DAY = 86_400 * SECOND
+
+
+def _known(kind: str, table: dict[str, bool]) -> BeforeValidator:
+    """Return a check that a word is in a table, and supported yet."""
+
+    def validate(value: object) -> str:
+        word = str(value)
+        if word not in table:
+            raise ValueError(f"`{word}` is no {kind}; expected one of {', '.join(table)}")
+        if not table[word]:
+            raise ValueError(f"`{word}` is not yet supported")
+        return word
+
+    return BeforeValidator(validate)
+
+
+class Secret(Part):
+    """Where a secret is kept; never the secret itself."""
+
+    file: Text | None = None
+    env: Text | None = None
+
+    @model_validator(mode="before")
+    @classmethod
+    def _one_place(cls, value: Any) -> Any:
+        if not isinstance(value, dict) or len(value) != 1 or not {"file", "env"} >= set(value):
+            raise ValueError("a secret is not written here; expected `{file: credentials/broker}` or `{env: NAME}`")
+        return value
+
+
+class Address(Part):
+    """Where the broker is. `transport` is tcp, unix or embedded."""
+
+    transport: Literal["tcp", "unix", "embedded"]
+    host: str = ""
+    port: int = 0
+    tls: bool = False
+
+
+def _address(value: object) -> Address:
+    text = str(value)
+    if text == "embedded":
+        return Address(transport="embedded")
+    try:
+        parts = urlsplit(text)
+        port = parts.port
+    except ValueError:
+        raise ValueError(f"`{text}` is not a broker's address") from None
+    if parts.username or parts.password:
+        raise ValueError("user name and password have keys of their own: `username`, `password`")
+    if parts.scheme == "unix" and parts.path:
+        return Address(transport="unix", host=parts.path)
+    if parts.scheme in {"mqtt", "mqtts"} and parts.hostname and parts.path in {"", "/"}:
+        tls = parts.scheme == "mqtts"
+        return Address(transport="tcp", host=parts.hostname, port=port or (8883 if tls else 1883), tls=tls)
+    raise ValueError(f"`{text}` is not a broker's address; expected `mqtt://host:1883`, `mqtts://…`, `unix:///path`")
+
+
+class Broker(Part):
+    """The broker, and who we are there."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset()
+
+    url: Annotated[Address, BeforeValidator(_address)]
+    protocol: Annotated[Literal["auto", "5", "3.1.1"], BeforeValidator(str)] = "auto"
+    username: Text | None = None
+    password: Secret | None = None
+    ca: Text | None = None
+    certificate: Text | None = None
+    key: Text | None = None
+    client_id: Text | None = None
+    link_tolerance: Duration = 30 * SECOND
+
+
+class Journal(Part):
+    """The audit trail."""
+
+    file: Text = "var/journal.db"
+    keep_readings: Duration = 400 * DAY
+
+
+class Shape(Part):
+    """The inside of a tank. Lengths in m."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset({"bottom", "ends", "table", "top"})
+
+    form: Annotated[str, _known("form", FORMS)]
+    diameter: Size | None = None
+    length: Size | None = None
+    width: Size | None = None
+    height: Size
+
+    @model_validator(mode="after")
+    def _measures(self) -> "Shape":
+        needed = {"vertical cylinder": {"diameter"}, "rectangular": {"length", "width"}}[self.form]
+        given = {key for key in ("diameter", "length", "width") if getattr(self, key) is not None}
+        if needed != given:
+            raise ValueError(f"a {self.form} has {', '.join(sorted(needed))} and height")
+        return self
+
+
+class Calibration(Part):
+    """Pairs of what the sensor said and the level in m."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset({"fit", "covers"})
+
+    points: list[tuple[AnyQuantity, Length]]
+
+    @model_validator(mode="before")
+    @classmethod
+    def _pairs(cls, value: Any) -> Any:
+        """Take each pair as a tuple, since strict reading tells lists and tuples apart."""
+        if isinstance(value, dict) and isinstance(value.get("points"), list):
+            points = value["points"]
+            if len(points) != 2:
+                count = "more than two points are not yet supported" if len(points) > 2 else "two points are needed"
+                raise ValueError(f"{count}; expected `[[raw, level], [raw, level]]`")
+            return {**value, "points": [tuple(p) if isinstance(p, list) else p for p in points]}
+        return value
+
+
+class Alive(Part):
+    """Where a sensor that sends only changes says whether it is alive."""
+
+    topic: Topic
+    field: PointerText | None = None
+    payloads: Payloads = Field(default_factory=lambda: {"yes": "1", "no": "0"})
+
+
+class OnChange(Part):
+    """A sensor that sends only changes."""
+
+    alive: Alive
+
+
+class Sensor(Part):
+    """One source of raw readings on one topic."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset(
+        {"fastest", "frozen_after", "despike", "lag", "oscillator", "probe", "compensate", "charging", "excitation"}
+        | {"density", "medium", "temperature", "barometer", "blanking", "time", "buffers", "resistor"}
+    )
+
+    topic: Topic
+    field: PointerText | None = None
+    senses: Annotated[str, _known("way to sense", {name: sense.supported for name, sense in SENSES.items()})]
+    unit: Unit | None = None
+    calibration: Calibration | None = None
+    mounted_at: Length | None = None
+    span: list[AnyQuantity] | None = None
+    payloads: Payloads | None = None
+    on_change: OnChange | None = None
+    expect_every: Duration | None = None
+    silent_after: Duration | None = None
+    tolerate: Duration | None = None
+    good_again: int | None = Field(default=None, ge=1, le=100)
+    range: list[AnyQuantity] | None = None
+
+
+class Command(Part):
+    """The message that puts an actuator into a state."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset({"repeat"})
+
+    topic: Topic
+    payloads: Payloads | None = None
+    qos: Literal[0, 1] = 1
+    retain: bool = False
+    expiry: Duration = 10 * SECOND
+
+
+class Actuator(Part):
+    """A pump, a valve, an appliance: something that is put into states."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset(
+        {"feedback", "limits", "proves", "will", "rated", "exercise", "on_stop", "locked"}
+    )
+
+    states: list[Word] = Field(default_factory=lambda: ["off", "on"], min_length=2)
+    rest: Word | None = None
+    safe: Word | None = None
+    prefer: Word | None = None
+    command: Command
+
+
+def _choice(value: object) -> str:
+    text = str(value)
+    if text in {"act", "hold", "release"} or text.startswith("act for "):
+        return text
+    raise ValueError(f"`{text}` is none of act, hold, release, `act for … every …`")
+
+
+Choice = Annotated[str, BeforeValidator(_choice)]
+
+
+class Rule(Part):
+    """Asks one actuator for one state, from one condition until another."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset({"alarm", "outranks"})
+
+    rank: Literal["trip", "interlock", "auto"] = "auto"
+    demand: Text
+    from_: Text = Field(alias="from")
+    until: Text | None = None
+    if_unknown: Choice | None = None
+    if_blind: Choice | None = None
+    unknown_for: Duration = 0
+    latch: bool = False
+
+
+class Common(Part):
+    """What can stand in a tank and at site level alike."""
+
+    sensors: dict[Name, Sensor] = Field(default_factory=dict)
+    actuators: dict[Name, Actuator] = Field(default_factory=dict)
+    rules: dict[str, Rule] = Field(default_factory=dict)
+
+
+class TankFile(Common):
+    """One tank."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset({"most_inflow", "pump_sets", "alarms", "typical", "blanks", "season"})
+
+    tank: Name
+    title: Text | None = None
+    shape: Shape | None = None
+    brim: Length | None = None
+    suction: Length | None = None
+    level: Name | None = None
+
+
+class SiteFile(Common):
+    """The site itself."""
+
+    LATER: ClassVar[frozenset[str]] = frozenset({"web", "pump_sets", "alarms", "bypass_at_most"})
+
+    site: Name
+    title: Text | None = None
+    timezone: Zone = "UTC"
+    broker: Broker
+    publish_under: Topic | None = None
+    journal: Journal = Journal()
+    startup_grace: Duration = 60 * SECOND
+    tanks: list[Text] = Field(default_factory=lambda: ["tanks/*.yaml"])
+
+
+class Site(Part):
+    """A whole site as read: the site's file, its tanks in file order, and the texts that all of it came from."""
+
+    file: SiteFile
+    tanks: dict[str, TankFile]
+    folder: Path
+    texts: dict[str, str]
+    digest: str
+
+    @property
+    def name(self) -> str:
+        """The site's name."""
+        return self.file.site
+
+    @property
+    def publish_under(self) -> str:
+        """The root of the gateway's own topics."""
+        return self.file.publish_under or f"brimward/{self.name}"
+
+    @property
+    def client_id(self) -> str:
+        """The name under which the broker knows the gateway."""
+        return self.file.broker.client_id or f"brimward-{self.name}"
+
+    @property
+    def journal_path(self) -> Path:
+        """The journal's file."""
+        return self.folder / self.file.journal.file

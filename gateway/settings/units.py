@@ -1,0 +1,107 @@
+"""Values with their units, as people write them: `1.40 m`, `80.6 kHz`, `2.4 l/s`, `3 m3`, `20 degC`, `85 %`.
+
+Units are pint's; each is worked out once. What pint cannot read as people write it (`m3`, `%`, temperatures) is made to
+work here.
+"""
+
+import math
+import re
+from functools import cache, lru_cache
+
+import pint
+
+from rules.quantity import Dimension, Quantity
+
+SECOND = 1_000_000_000
+
+_VALUE = re.compile(r"\s*([-+]?[0-9]+(?:\.[0-9]+)?(?:[eE][-+]?[0-9]+)?)\s*(\S*)\s*", re.ASCII)
+_UNIT = re.compile(r"[A-Za-zµμΩ°][A-Za-z0-9µμΩ°/*^]{0,20}")
+_POWER = re.compile(r"(?<=[A-Za-zµμ])([23])(?![0-9])")  # m3 is a cubic metre
+_OFFSET = {"degC": (1.0, 273.15), "°C": (1.0, 273.15), "degF": (5 / 9, 459.67 * 5 / 9), "°F": (5 / 9, 459.67 * 5 / 9)}
+
+
+@cache
+def _registry() -> "pint.UnitRegistry[float]":
+    return pint.UnitRegistry(cache_folder=None)
+
+
+@cache
+def _dimensions() -> dict[object, Dimension]:
+    units = {d.unit.replace("m3", "m**3"): d for d in Dimension if d not in {Dimension.SHARE, Dimension.NUMBER}}
+    return {_registry().Unit(unit).dimensionality: dimension for unit, dimension in units.items()}
+
+
+@lru_cache(maxsize=1_000)
+def _unit(text: str) -> tuple[float, Dimension]:
+    """Return how many SI units one of `text` is, and of which dimension; raise ValueError for what is no unit."""
+    if text == "%":
+        return 0.01, Dimension.SHARE
+    if not _UNIT.fullmatch(text):
+        raise ValueError(f"`{text}` is not a unit")
+    try:
+        one = _registry().Quantity(1.0, _POWER.sub(r"**\1", text.replace("^", "**"))).to_base_units()
+    except Exception as problem:  # pint raises many kinds, some of them of the parser beneath it
+        raise ValueError(f"`{text}` is not a unit that is known here") from problem
+    dimension = _dimensions().get(one.dimensionality)
+    if dimension is None:
+        raise ValueError(f"`{text}` is a unit of nothing that is measured here")
+    return float(one.magnitude), dimension
+
+
+def read(text: str) -> Quantity:
+    """Return the value that `text` holds, in SI units; raise ValueError, with a sentence, when it holds none."""
+    found = _VALUE.fullmatch(text)
+    if found is None:
+        raise ValueError(f"`{text}` is not a value with its unit, such as `1.40 m`")
+    number, unit = float(found[1]), found[2]
+    if not math.isfinite(number):
+        raise ValueError(f"`{text}` is too large")
+    if not unit:
+        return Quantity(number, Dimension.NUMBER)
+    if unit in _OFFSET:
+        factor, zero = _OFFSET[unit]
+        return Quantity(number * factor + zero, Dimension.TEMPERATURE)
+    factor, dimension = _unit(unit)
+    return Quantity(_times(number, factor), dimension)
+
+
+def _times(number: float, factor: float) -> float:
+    """Return the product as exactly as decimal people expect: 5 cm is 0.05 m, not 0.05 and some noise."""
+    inverse = 1 / factor
+    return (
+        number / round(inverse) if inverse > 1 and abs(inverse - round(inverse)) < 1e-9 * inverse else number * factor
+    )
+
+
+_EXAMPLES = {
+    Dimension.LENGTH: "1.40 m",
+    Dimension.VOLUME: "3 m3",
+    Dimension.TIME: "10 s",
+    Dimension.FREQUENCY: "80.6 kHz",
+    Dimension.CAPACITANCE: "84 pF",
+    Dimension.CURRENT: "12 mA",
+    Dimension.SHARE: "85 %",
+}
+
+
+def read_as(value: object, *wanted: Dimension) -> Quantity:
+    """Return the value that `value` holds, of one of the `wanted` dimensions; raise ValueError when it is another."""
+    kinds = " or ".join(dimension.words for dimension in wanted)
+    example = _EXAMPLES.get(wanted[0], f"1 {wanted[0].unit}")
+    if isinstance(value, bool) or not isinstance(value, int | float | str):
+        raise ValueError(f"expected {kinds} such as `{example}`")
+    if not isinstance(value, str):
+        raise ValueError(f"`{value}` needs a unit; expected {kinds} such as `{example}`")
+    quantity = read(value)
+    if quantity.dimension is Dimension.NUMBER:
+        raise ValueError(f"`{value}` needs a unit; expected {kinds} such as `{example}`")
+    if quantity.dimension not in wanted:
+        raise ValueError(f"`{value}` is {quantity.dimension.words}; expected {kinds} such as `{example}`")
+    return quantity
+
+
+def scale(unit: str) -> tuple[float, Dimension]:
+    """Return how many SI units one `unit` is, and of which dimension; raise ValueError for what is no unit."""
+    if unit in _OFFSET:
+        raise ValueError(f"`{unit}` has a zero of its own and cannot be a scale")
+    return _unit(unit)
