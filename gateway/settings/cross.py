@@ -238,7 +238,7 @@ def _conditions(rule: Rule, place: _Place, path: Path, scope: TankScope) -> Iter
 
 def _unknown(rule: Rule, place: _Place, path: Path) -> Iterator[Complaint]:
     if rule.rank != "auto" and rule.if_unknown is None:
-        yield place.say(path, f"`if_unknown` is missing; of a {rule.rank} it must be said: act, hold or release")
+        yield place.say(path, f"`if_unknown` is missing; it must be said of every {rule.rank}: act, hold or release")
     if rule.rank == "auto" and rule.latch:
         yield place.say((*path, "latch"), "only a trip or an interlock latches")
     for key in ("if_unknown", "if_blind"):
