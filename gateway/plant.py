@@ -313,6 +313,11 @@ class Plant:
             "reason": used.reason,
         }
 
+    def adopt(self, before: "Plant") -> list[str]:
+        """Take over, from a plant of other settings, the rules that have not changed; return what is lost by it."""
+        self.t, self.offset = before.t, before.offset
+        return self.engine.adopt(before.engine)
+
     def save(self) -> dict[str, Any]:
         """Return the whole state as plain JSON values."""
         return {

@@ -291,6 +291,25 @@ class Engine:
             "rules": [_told(self.now, rule) for rule in found.rules],
         }
 
+    def adopt(self, before: "Engine") -> list[str]:
+        """Take over, from an engine of other settings, the rules that have not changed; return what is lost by it.
+
+        To be followed by a `Started`, which makes everything else anew.
+        """
+        self.now = before.now
+        self._grace.restore(before._grace.save())  # noqa: SLF001 - one engine of another
+        same = {rule.decl.name: rule for rule in self._rules}
+        lost = []
+        for old in before._rules:  # noqa: SLF001 - one engine of another
+            rule = same.get(old.decl.name)
+            if rule is not None and rule.decl == old.decl:
+                rule.restore(old.save())
+            elif old.latched:
+                lost.append(
+                    f"rule '{old.decl.name}' was latched; it has been changed or removed, and its latch with it"
+                )
+        return lost
+
     def save(self) -> dict[str, Any]:
         """Return the whole state as plain JSON values."""
         return {

@@ -7,6 +7,15 @@ import sys
 
 import typer
 
+from gateway.cli.check import check
+from gateway.cli.convert import convert
+from gateway.cli.demo import demo
+from gateway.cli.journal import journal
+from gateway.cli.listen import listen
+from gateway.cli.record import record
+from gateway.cli.replay import replay
+from gateway.cli.run import run
+from gateway.cli.why import why
 from gateway.errors import BrimwardError
 
 app = typer.Typer(
@@ -15,7 +24,11 @@ app = typer.Typer(
     no_args_is_help=True,
     pretty_exceptions_enable=False,
     add_completion=False,
+    rich_markup_mode=None,
 )
+for command in (check, run, demo, listen, convert, record, replay, why):
+    app.command()(command)
+app.add_typer(journal, name="journal")
 
 
 def main() -> None:
@@ -25,3 +38,6 @@ def main() -> None:
     except BrimwardError as error:
         print(error, file=sys.stderr)  # noqa: T201 - this is the command line's own voice
         sys.exit(2)
+    except BrokenPipeError:
+        sys.stderr.close()  # whoever read us has seen enough; the interpreter would complain about it
+        sys.exit(0)

@@ -64,9 +64,7 @@ def told(event: Event) -> tuple[str, str | None]:
     return kind, json.dumps(facts, sort_keys=True) if facts else None
 
 
-def event_of(
-    t: int, kind: str, topic: str | None, payload: bytes | None, flags: int, data: str | None
-) -> Event:
+def event_of(t: int, kind: str, topic: str | None, payload: bytes | None, flags: int, data: str | None) -> Event:
     """Return the input that a row holds."""
     if kind == "message":
         return Message(t, topic or "", payload or b"", bool(flags & RETAINED), bool(flags & LATE))
