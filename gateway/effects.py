@@ -9,7 +9,7 @@ from typing import Any, NamedTuple
 class Command(NamedTuple):
     """An actuator is to be put into a state: the message that does it, and why.
 
-    `rank` and `rule` are None when no rule asks. `again` is true when a state is only renewed.
+    `rank` is rest or safe, and `rule` None, when no rule asks. `again` is true when a state is only renewed.
     """
 
     t: int

@@ -7,15 +7,15 @@ import sys
 
 import typer
 
-from gateway.cli.check import check
-from gateway.cli.convert import convert
-from gateway.cli.demo import demo
+from gateway.cli.check import check_command
+from gateway.cli.convert import convert_command
+from gateway.cli.demo import demo_command
 from gateway.cli.journal import journal
-from gateway.cli.listen import listen
-from gateway.cli.record import record
-from gateway.cli.replay import replay
-from gateway.cli.run import run
-from gateway.cli.why import why
+from gateway.cli.listen import listen_command
+from gateway.cli.record import record_command
+from gateway.cli.replay import replay_command
+from gateway.cli.run import run_command
+from gateway.cli.why import why_command
 from gateway.errors import BrimwardError
 
 app = typer.Typer(
@@ -26,8 +26,14 @@ app = typer.Typer(
     add_completion=False,
     rich_markup_mode=None,
 )
-for command in (check, run, demo, listen, convert, record, replay, why):
-    app.command()(command)
+app.command("check")(check_command)
+app.command("run")(run_command)
+app.command("demo")(demo_command)
+app.command("listen")(listen_command)
+app.command("convert")(convert_command)
+app.command("record")(record_command)
+app.command("replay")(replay_command)
+app.command("why")(why_command)
 app.add_typer(journal, name="journal")
 
 

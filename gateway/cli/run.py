@@ -2,11 +2,12 @@
 
 import logging
 import signal
-from pathlib import Path
 from types import FrameType
+from typing import Annotated
 
 import typer
 
+from gateway.cli.common import SiteArgument
 from gateway.clock import Clock
 from gateway.connect import link_options
 from gateway.journal.lock import Lock
@@ -19,9 +20,9 @@ from gateway.settings.load import load
 log = logging.getLogger("brimward")
 
 
-def run(
-    site: Path = typer.Argument(help="The site's folder, or its site.yaml.", metavar="SITE"),
-    verbose: bool = typer.Option(False, "--verbose", "-v", help="Tell more of what happens."),
+def run_command(
+    site: SiteArgument,
+    verbose: Annotated[bool, typer.Option("-v", "--verbose", help="Tell more of what happens.")] = False,
 ) -> None:
     """Run the gateway until it is stopped (Ctrl-C, or SIGTERM).
 

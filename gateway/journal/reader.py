@@ -38,9 +38,15 @@ class Reader:
 
     def seq_at(self, at: int) -> int:
         """Return the number of the newest input up to the wall time `at`, 0 when there is none."""
-        query = "SELECT seq FROM event WHERE at <= ? ORDER BY seq DESC LIMIT 1"
-        row = self._connection.execute(query, (at,)).fetchone()
-        return int(row[0]) if row else 0
+        first, after = 0, self.last_seq() + 1  # the answer is in [first, after): inputs are numbered without gaps
+        while after - first > 1:
+            middle = (first + after) // 2
+            query = "SELECT at FROM event WHERE seq >= ? ORDER BY seq LIMIT 1"
+            if self._connection.execute(query, (middle,)).fetchone()[0] <= at:
+                first = middle
+            else:
+                after = middle
+        return first
 
     def last_snapshot(self, upto: int | None = None) -> SnapshotRow | None:
         """Return the newest snapshot, after no input later than the one numbered `upto`."""
@@ -76,15 +82,46 @@ class Reader:
                 return
             after = rows[-1][0]
 
+    def notable(self, span: Span = ALWAYS, newest: int = -1) -> list[EventRow]:
+        """Return the inputs that are neither messages nor wake-ups, oldest first: the `newest` ones (-1: all)."""
+        query = (
+            "SELECT seq, t, at, kind, data FROM event INDEXED BY event_of_note"
+            " WHERE kind NOT IN (0, 5) AND at BETWEEN ? AND ? ORDER BY at DESC, seq DESC LIMIT ?"
+        )
+        rows = self._connection.execute(query, (*span, newest)).fetchall()
+        return [
+            EventRow(seq, at, event_of(t, KINDS[kind], None, None, 0, data))
+            for seq, t, at, kind, data in reversed(rows)
+        ]
+
+    def messages(self, topics: tuple[str, ...], span: Span = ALWAYS, newest: int = -1) -> list[EventRow]:
+        """Return the messages on some topics within a span, oldest first: the `newest` ones (-1: all)."""
+        first, last = self.seq_at(span.begin - 1), self.seq_at(span.end)
+        query = (
+            "SELECT e.seq, e.t, e.at, topic.name, e.payload, e.flags FROM event e JOIN topic ON topic.id = e.topic"  # noqa: S608 - only placeholders are put in
+            f" WHERE e.seq > ? AND e.seq <= ? AND e.kind = 0 AND topic.name IN ({', '.join('?' * len(topics))})"
+            " ORDER BY e.seq DESC LIMIT ?"
+        )
+        rows = self._connection.execute(query, (first, last, *topics, newest)).fetchall()
+        return [
+            EventRow(seq, at, event_of(t, "message", topic, payload, flags, None))
+            for seq, t, at, topic, payload, flags in reversed(rows)
+        ]
+
     def effects(
-        self, *, subject: str | None = None, kinds: tuple[str, ...] = (), span: Span = ALWAYS, newest: int = -1
+        self,
+        *,
+        subjects: tuple[str, ...] | None = None,
+        kinds: tuple[str, ...] = (),
+        span: Span = ALWAYS,
+        newest: int = -1,
     ) -> list[EffectRow]:
-        """Return effects, oldest first: the `newest` ones (-1: all) of a subject and of kinds, within a span."""
+        """Return effects, oldest first: the `newest` ones (-1: all) of some subjects and kinds, within a span."""
         where, given = ["at BETWEEN ? AND ?"], [*span]
         values: list[Any] = list(given)
-        if subject is not None:
-            where.append("subject = ?")
-            values.append(subject)
+        if subjects is not None:
+            where.append(f"subject IN ({', '.join('?' * len(subjects))})")
+            values.extend(subjects)
         if kinds:
             where.append(f"kind IN ({', '.join('?' * len(kinds))})")
             values.extend(kinds)

@@ -1,0 +1,57 @@
+"""`brimward check`: reads everything, says what is wrong and what is risky."""
+
+from typing import Annotated
+
+import typer
+
+from gateway.cli.common import SiteArgument
+from gateway.plan import PlantPlan
+from gateway.settings.advice import advise
+from gateway.settings.assemble import plant_plan
+from gateway.settings.complaint import SettingsError
+from gateway.settings.load import load
+from rules.model import RuleDecl
+
+
+def check_command(
+    site: SiteArgument,
+    strict: Annotated[bool, typer.Option("--strict", help="What is risky also ends with status 1.")] = False,
+    verbose: Annotated[bool, typer.Option("-v", "--verbose", help="Print every rule in full.")] = False,
+) -> None:
+    """Read a site's settings; say what is wrong, what is risky and why.
+
+    Example: brimward check config_examples/hill-dairy -v
+    """
+    try:
+        settings = load(site)
+    except SettingsError as error:
+        count = len(error.complaints)
+        typer.echo(str(error))
+        typer.echo(f"{count} {'complaint' if count == 1 else 'complaints'}; nothing of it can be used yet")
+        raise typer.Exit(1) from None
+    plan = plant_plan(settings)
+    risks = advise(settings, plan)
+    _summarise(settings.name, plan, verbose=verbose)
+    for risk in risks:
+        typer.echo(f"risky: {risk}")
+    if strict and risks:
+        raise typer.Exit(1)
+
+
+def _summarise(name: str, plan: PlantPlan, *, verbose: bool) -> None:
+    site = plan.site
+    tanks = len({decl.name.partition(".")[0] for decl in site.signals if "." in decl.name})
+    counts = f"{tanks} tanks, {len(plan.sensors)} sensors, {len(site.actuators)} actuators, {len(site.rules)} rules"
+    typer.echo(f"{name}: {counts}; all of it can be used")
+    for rule in site.rules if verbose else ():
+        typer.echo(_told(rule))
+
+
+def _told(rule: RuleDecl) -> str:
+    until = rule.until if rule.until is not None else f"not ({rule.from_})"
+    lines = [
+        f"  {rule.name}: {rule.rank.word} → {rule.actuator} {rule.state}{', latches' if rule.latch else ''}",
+        f"    from  {rule.from_}",
+        f"    until {until}",
+    ]
+    return "\n".join(lines)

@@ -1,0 +1,103 @@
+"""`brimward listen`: what arrives, live, raw and converted, and what matches nothing."""
+
+import time
+from datetime import UTC, datetime
+from typing import Annotated, Any
+from zoneinfo import ZoneInfo
+
+import typer
+
+from gateway.cli.common import AsJson, SiteArgument, named, print_json
+from gateway.connect import link_options
+from gateway.link.tap import Heard, Tap
+from gateway.measure.sensor import Sensor
+from gateway.plan import PlantPlan
+from gateway.settings.assemble import plant_plan
+from gateway.settings.load import load
+from gateway.topics import moment, rounded
+
+
+def listen_command(
+    site: SiteArgument,
+    sensor: Annotated[str | None, typer.Argument(help="Only this sensor.", metavar="[TANK.SENSOR]")] = None,
+    as_json: AsJson = False,
+    duration: Annotated[float | None, typer.Option("--for", help="Seconds to listen; else until Ctrl-C.")] = None,
+) -> None:
+    """Show what arrives on the site's topics, raw and converted, and topics beside them that match nothing.
+
+    Example: brimward listen config_examples/hill-dairy condensate-drum.probe
+    """
+    settings = load(site)
+    plan = plant_plan(settings)
+    ear = _Ear(plan, settings.file.timezone, only=sensor, as_json=as_json, own=settings.publish_under)
+    tap = Tap(link_options(settings, ()), ear.filters)
+    until = time.monotonic() + (duration if duration is not None else float("inf"))
+    try:
+        while time.monotonic() < until:
+            for heard in tap.heard(within_s=min(0.5, max(0.0, until - time.monotonic()))):
+                ear.show(heard)
+                if time.monotonic() >= until:
+                    break
+    except KeyboardInterrupt:
+        pass
+    finally:
+        tap.close()
+
+
+class _Ear:
+    """Turns messages into lines."""
+
+    def __init__(self, plan: PlantPlan, zone: str, *, only: str | None, as_json: bool, own: str) -> None:
+        by_name = {one.name: one for one in plan.sensors}
+        chosen = list(by_name.values()) if only is None else [by_name[named(only, by_name, "sensor")]]
+        self.sensors = [Sensor(one) for one in chosen]
+        self.zone = ZoneInfo(zone)
+        self.as_json = as_json
+        self.own = own
+        self.commands = {command.topic: actuator for actuator, command in plan.commands.items()}
+        self.unmatched: set[str] = set()
+        self.filters = self._filters(only)
+
+    def _filters(self, only: str | None) -> list[str]:
+        """Return what to subscribe to: the sensors' topics, and what lies beside them under the same first words."""
+        topics = [topic for sensor in self.sensors for topic in sensor.topics]
+        if only is not None:
+            return topics
+        return sorted({f"{topic.split('/', 1)[0]}/#" if "/" in topic else topic for topic in topics})
+
+    def show(self, heard: Heard) -> None:
+        """Print one message: once for each sensor that listens to it, or once as matching nothing."""
+        found = [sensor for sensor in self.sensors if heard.topic in sensor.topics]
+        for sensor in found:
+            self._show_reading(sensor, heard)
+        if not found and heard.topic in self.commands:
+            self._print({"topic": heard.topic, "note": f"commands {self.commands[heard.topic]}"}, heard)
+        elif not found and not heard.topic.startswith(f"{self.own}/") and heard.topic not in self.unmatched:
+            if len(self.unmatched) < 10_000:  # a bound, should topics never end
+                self.unmatched.add(heard.topic)
+            self._print({"topic": heard.topic, "note": "matches nothing"}, heard)
+
+    def _show_reading(self, sensor: Sensor, heard: Heard) -> None:
+        sensor.take(time.time_ns(), heard.topic, heard.payload, retained=heard.retained)
+        last = sensor.last
+        if heard.topic != sensor.plan.topic or last is None or (heard.retained and not sensor.on_change):
+            kind = "retained: not a live reading" if heard.topic == sensor.plan.topic else "sign of life"
+            self._print({"sensor": sensor.plan.name, "topic": heard.topic, "note": kind}, heard)
+            return
+        value = rounded(last.value, 4) if isinstance(last.value, float) else last.value
+        facts = {"sensor": sensor.plan.name, "raw": last.raw, "unit": sensor.plan.unit, "value": value}
+        self._print({**facts, "status": last.status.value, "reason": last.reason}, heard)
+
+    def _print(self, facts: dict[str, Any], heard: Heard) -> None:
+        payload = heard.payload[:200].decode("utf-8", "replace")
+        if self.as_json:
+            print_json({"at": moment(time.time_ns()), "topic": heard.topic, "payload": payload, **facts})
+            return
+        clock = f"{datetime.now(UTC).astimezone(self.zone):%H:%M:%S}"
+        if "note" in facts:
+            typer.echo(f"{clock}  {facts.get('sensor', heard.topic)}  {payload!r}  {facts['note']}")
+            return
+        value = facts["value"]
+        shown = f"{value:.4f} m" if isinstance(value, float) else value or "no value"
+        reason = f": {facts['reason']}" if facts["reason"] else ""
+        typer.echo(f"{clock}  {facts['sensor']}  {payload}  → {shown}  {facts['status']}{reason}")
