@@ -21,7 +21,7 @@ def link_options(site: Site, subscriptions: tuple[str, ...], *, port: int | None
         port=address.port if port is None else port,
         transport=Transport.UNIX if address.transport == "unix" else Transport.TCP,
         tls=_tls(broker, site.folder) if address.tls else None,
-        protocol=Protocol(broker.protocol),
+        protocol=Protocol(broker.protocol) if port is None else Protocol.V311,  # the embedded broker speaks no other
         username=broker.username,
         password=None if broker.password is None else secret(broker.password, site.folder),
         client_id=site.client_id,

@@ -6,6 +6,7 @@ Restart uses this, and so does every question about the past.
 from pathlib import Path
 
 from gateway.errors import JournalError
+from gateway.events import Start, Wake
 from gateway.journal.reader import Reader
 from gateway.plant import Plant
 from gateway.settings.assemble import plant_plan
@@ -30,6 +31,19 @@ def recall(reader: Reader, site: Site, upto: int | None = None) -> tuple[Plant, 
     for row in reader.events(snapshot.seq, last):
         plant.step(row.event)
     return plant, snapshot.digest
+
+
+def recall_at(reader: Reader, site: Site, at: int) -> tuple[Plant, str] | None:
+    """Return the plant, and the digest of its settings, as it was at the wall time `at`; None when nothing was yet."""
+    upto = reader.seq_at(at)
+    found = recall(reader, site, upto) if upto else None
+    if found is None:
+        return None
+    plant, _ = found
+    following = next(reader.events(upto, upto + 1), None)
+    if following is not None and not isinstance(following.event, Start):
+        plant.step(Wake(at - plant.offset + 1))  # deadlines between two inputs have fired by then
+    return found
 
 
 def _site_of(reader: Reader, site: Site, digest: str) -> Site:

@@ -68,12 +68,12 @@ def _demanded(chosen: Rule, asking: Sequence[Rule]) -> Decision:
 def _undecided(actuator: ActuatorDecl, waiting: Rule, fallback: Fallback) -> Decision:
     name = waiting.decl.name
     if fallback is Fallback.SAFE:
-        return Decision(actuator.safe, None, None, f"rule '{name}' is not decided yet, so it is put to safe")
+        return Decision(actuator.safe, Rank.SAFE, None, f"rule '{name}' is not decided yet, so it is put to safe")
     return Decision(None, None, None, f"rule '{name}' is not decided yet since the start, so it is left as found")
 
 
 def _at_rest(actuator: ActuatorDecl, rules: Sequence[Rule]) -> Decision:
     blind = next((rule.decl.name for rule in rules if rule.blind), None)
     if blind is None:
-        return Decision(actuator.rest, None, None, "no rule asks for anything, so it rests")
-    return Decision(actuator.safe, None, None, f"rule '{blind}' cannot be decided, so it is put to safe")
+        return Decision(actuator.rest, Rank.REST, None, "no rule asks for anything, so it rests")
+    return Decision(actuator.safe, Rank.SAFE, None, f"rule '{blind}' cannot be decided, so it is put to safe")

@@ -28,7 +28,7 @@ class RuleChanged(NamedTuple):
 class Commanded(NamedTuple):
     """An actuator is to be put into a state.
 
-    `rank` is None when nobody asks (rest, or safe when blind). `reason` is one plain sentence. `overruled` are the
+    `rank` is rest or safe, and `rule` None, when nobody asks. `reason` is one plain sentence. `overruled` are the
     rules in force that asked for something else. `again` is true when the state is only renewed.
     """
 

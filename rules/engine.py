@@ -265,7 +265,7 @@ class Engine:
         effects.append(Noted(t, "gateway", reason))
         for index in sorted({self._actuator_of[index] for index in pending}):
             actuator = self._actuators[index]
-            actuator.decided = Decision(actuator.decl.safe, None, None, f"{reason}, so it is put to safe")
+            actuator.decided = Decision(actuator.decl.safe, Rank.SAFE, None, f"{reason}, so it is put to safe")
             self._send(t, actuator, effects, renew=False)
 
     # ---- for people, and for the journal --------------------------------------------------------------------------

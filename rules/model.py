@@ -31,11 +31,17 @@ class Signal(NamedTuple):
 
 
 class Rank(IntEnum):
-    """The rank of a demand; a lower number overrules a higher one. `hand` arrives with the operators' acts."""
+    """The rank of a demand; a lower number overrules a higher one.
+
+    The last two are what is left when nobody asks: rest where all is known, safe where it is not. Between interlock and
+    auto there is a place for the operators' `hand`.
+    """
 
     TRIP = 0
     INTERLOCK = 1
     AUTO = 3
+    REST = 4
+    SAFE = 5
 
     @property
     def word(self) -> str:

@@ -9,7 +9,7 @@ from gateway.cli.times import read_time, shown
 from gateway.errors import InputError
 from gateway.journal.reader import Span
 from gateway.plant import Plant
-from gateway.recall import reader_of, recall
+from gateway.recall import reader_of, recall, recall_at
 from gateway.review.sentences import actuator_sentences, rule_sentences
 from gateway.review.why import why_actuator, why_rule
 from gateway.settings.load import load
@@ -33,8 +33,7 @@ def why_command(
     zone = settings.file.timezone
     reader = reader_of(settings)
     when = read_time(at, zone) if at else Span().end
-    upto = reader.seq_at(when) if at else reader.last_seq()
-    found = recall(reader, settings, upto) if upto else None
+    found = recall_at(reader, settings, when) if at else recall(reader, settings)
     if found is None:
         raise InputError("the journal does not reach back to that time" if at else "nothing has happened yet")
     plant, _ = found

@@ -1,11 +1,13 @@
 """Reading the journal: each call is short, and reads what is committed at that moment. Any thread, its own reader."""
 
 import json
+import sqlite3
 import zlib
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any, NamedTuple
 
+from gateway.errors import JournalError
 from gateway.journal.records import EffectRow, EventRow, SnapshotRow, event_of
 from gateway.journal.store import KINDS, open_to_read
 
@@ -26,15 +28,26 @@ class Reader:
     """A read-only view of one journal file. Raises JournalError when it cannot be opened."""
 
     def __init__(self, path: Path) -> None:
+        self._path = path
         self._connection = open_to_read(path)
 
     def close(self) -> None:
         """Close the file."""
         self._connection.close()
 
+    def _all(self, query: str, given: tuple[Any, ...] = ()) -> list[Any]:
+        try:
+            return self._connection.execute(query, given).fetchall()
+        except sqlite3.Error as problem:
+            raise JournalError(f"{self._path}: the journal cannot be read: {problem}") from None
+
+    def _one(self, query: str, given: tuple[Any, ...] = ()) -> Any:
+        rows = self._all(query, given)
+        return rows[0] if rows else None
+
     def last_seq(self) -> int:
         """Return the number of the newest input, 0 when there is none."""
-        return int(self._connection.execute("SELECT coalesce(max(seq), 0) FROM event").fetchone()[0])
+        return int(self._one("SELECT coalesce(max(seq), 0) FROM event")[0])
 
     def seq_at(self, at: int) -> int:
         """Return the number of the newest input up to the wall time `at`, 0 when there is none."""
@@ -42,7 +55,7 @@ class Reader:
         while after - first > 1:
             middle = (first + after) // 2
             query = "SELECT at FROM event WHERE seq >= ? ORDER BY seq LIMIT 1"
-            if self._connection.execute(query, (middle,)).fetchone()[0] <= at:
+            if self._one(query, (middle,))[0] <= at:
                 first = middle
             else:
                 after = middle
@@ -51,7 +64,7 @@ class Reader:
     def last_snapshot(self, upto: int | None = None) -> SnapshotRow | None:
         """Return the newest snapshot, after no input later than the one numbered `upto`."""
         query = "SELECT seq, at, digest, state FROM snapshot WHERE seq <= ? ORDER BY seq DESC LIMIT 1"
-        row = self._connection.execute(query, (2**63 - 1 if upto is None else upto,)).fetchone()
+        row = self._one(query, (2**63 - 1 if upto is None else upto,))
         if row is None:
             return None
         seq, at, digest, state = row
@@ -59,12 +72,12 @@ class Reader:
 
     def settings(self, digest: str) -> dict[str, str] | None:
         """Return the texts of the settings with this digest."""
-        row = self._connection.execute("SELECT texts FROM settings WHERE digest = ?", (digest,)).fetchone()
+        row = self._one("SELECT texts FROM settings WHERE digest = ?", (digest,))
         return None if row is None else json.loads(row[0])
 
     def newest_settings(self) -> str | None:
         """Return the digest of the settings that came into force last."""
-        row = self._connection.execute("SELECT digest FROM settings ORDER BY at DESC, id DESC LIMIT 1").fetchone()
+        row = self._one("SELECT digest FROM settings ORDER BY at DESC, id DESC LIMIT 1")
         return None if row is None else str(row[0])
 
     def events(self, after: int = 0, upto: int | None = None) -> Iterator[EventRow]:
@@ -75,7 +88,7 @@ class Reader:
             " LEFT JOIN topic ON topic.id = e.topic WHERE e.seq > ? AND e.seq <= ? ORDER BY e.seq LIMIT ?"
         )
         while after < last:
-            rows = self._connection.execute(query, (after, last, CHUNK)).fetchall()
+            rows = self._all(query, (after, last, CHUNK))
             for seq, t, at, kind, topic, payload, flags, data in rows:
                 yield EventRow(seq, at, event_of(t, KINDS[kind], topic, payload, flags, data))
             if not rows:
@@ -88,7 +101,7 @@ class Reader:
             "SELECT seq, t, at, kind, data FROM event INDEXED BY event_of_note"
             " WHERE kind NOT IN (0, 5) AND at BETWEEN ? AND ? ORDER BY at DESC, seq DESC LIMIT ?"
         )
-        rows = self._connection.execute(query, (*span, newest)).fetchall()
+        rows = self._all(query, (*span, newest))
         return [
             EventRow(seq, at, event_of(t, KINDS[kind], None, None, 0, data))
             for seq, t, at, kind, data in reversed(rows)
@@ -102,7 +115,7 @@ class Reader:
             f" WHERE e.seq > ? AND e.seq <= ? AND e.kind = 0 AND topic.name IN ({', '.join('?' * len(topics))})"
             " ORDER BY e.seq DESC LIMIT ?"
         )
-        rows = self._connection.execute(query, (first, last, *topics, newest)).fetchall()
+        rows = self._all(query, (first, last, *topics, newest))
         return [
             EventRow(seq, at, event_of(t, "message", topic, payload, flags, None))
             for seq, t, at, topic, payload, flags in reversed(rows)
@@ -130,7 +143,7 @@ class Reader:
             + " AND ".join(where)
             + " ORDER BY id DESC LIMIT ?"
         )
-        rows = self._connection.execute(query, (*values, newest)).fetchall()
+        rows = self._all(query, (*values, newest))
         return [
             EffectRow(seq, t, at, kind, about, json.loads(data)) for seq, t, at, kind, about, data in reversed(rows)
         ]
