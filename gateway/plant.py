@@ -12,6 +12,7 @@ from typing import Any, assert_never
 from gateway.effects import Command, Effect, Note, Reason, RuleChange, SensorChange, Value
 from gateway.events import ClockSet, Event, LinkDown, LinkUp, Message, Start, Stop, Wake
 from gateway.measure.sensor import Sensor
+from gateway.measure.status import Status
 from gateway.plan import PlantPlan, TankPlan
 from rules import effects as core
 from rules.engine import Engine
@@ -208,30 +209,33 @@ class Plant:
         changes: list[tuple[int, Signal]] = []
         for index in indices:
             sensor = self.sensors[index]
-            signal = sensor.signal
-            changes.append((self._slots[index], signal))
-            for tank in self._tanks[index]:
-                self._fill(t, tank, sensor, changes, effects)
-            if sensor.status is not self._status[index]:
-                self._status[index] = sensor.status
-                name = self.plan.sensors[index].name
-                effects.append(SensorChange(t, t + self.offset, name, sensor.status.value, sensor.reason))
+            changes.append((self._slots[index], sensor.signal))
+            status, reason = sensor.status, sensor.reason
+            effects += [self._fill(t, tank, sensor.signal, status, reason, changes) for tank in self._tanks[index]]
+            if status is not self._status[index]:
+                self._status[index] = status
+                effects.append(SensorChange(t, t + self.offset, self.plan.sensors[index].name, status.value, reason))
         if changes:
             self._control(Signals(t, tuple(changes)), effects)
 
     def _fill(
-        self, t: int, tank: _Tank, sensor: Sensor, changes: list[tuple[int, Signal]], effects: list[Effect]
-    ) -> None:
-        """Bring a tank's level and volume up to what its sensor says."""
-        signal, plan = sensor.signal, tank.plan
+        self,
+        t: int,
+        tank: _Tank,
+        signal: Signal,
+        status: Status,
+        reason: str | None,
+        changes: list[tuple[int, Signal]],
+    ) -> Value:
+        """Bring a tank's level and volume up to what its sensor says; return them as an effect."""
+        plan = tank.plan
         changes.append((tank.level, signal))
         level = signal.value if isinstance(signal.value, float) else None
         volume = None if level is None or plan.shape is None else plan.shape.volume(level)
         if tank.volume is not None:
             changes.append((tank.volume, Signal(volume, signal.fault if volume is None else Fault.NONE)))
         share = level / plan.brim if level is not None and plan.brim else None
-        at = t + self.offset
-        effects.append(Value(t, at, plan.name, level, share, volume, sensor.status.value, sensor.reason))
+        return Value(t, t + self.offset, plan.name, level, share, volume, status.value, reason)
 
     # ---- from the engine to the world -----------------------------------------------------------------------------
 

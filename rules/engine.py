@@ -8,17 +8,18 @@ Commands are netted: at most one per actuator and step.
 """
 
 import heapq
+from bisect import bisect_left, bisect_right
 from collections.abc import Iterable
 from typing import Any, assert_never
 
 from rules.arbitration import Decision, Fallback, arbitrate
-from rules.conditions.compile import Board
+from rules.conditions.compile import DIGITS, Board
 from rules.conditions.tree import SECOND
 from rules.effects import Commanded, Effect, Noted, ReasonChanged, RuleChanged
 from rules.events import Event, LinkLost, LinkProven, Passed, Signals, Started
 from rules.grace import Grace
 from rules.model import ActuatorDecl, Fault, Rank, Signal, SiteDecl
-from rules.rule import Rule, Side
+from rules.rule import Rule, Side, earlier
 
 MOST_PASSES = 8  # rules that still move actuators after so many passes at one instant chase each other
 
@@ -52,6 +53,8 @@ class Engine:
         places = {decl.name: index for index, decl in enumerate(site.actuators)}
         self._actuator_of = [places[decl.actuator] for decl in site.rules]
         self._readers = self._index()
+        self._edges = [self._edges_of(slot) for slot in range(len(self.board.values))]
+        self._between: list[int | None] = [None] * len(self._edges)  # between which edges each signal stands
         self._heap: list[tuple[int, int]] = []  # (deadline, rule), entries of superseded deadlines included
         self._fallback = Fallback.AS_FOUND
         self._proven = False
@@ -70,6 +73,16 @@ class Engine:
             for slot in rule.inputs:
                 readers[slot].append(index)
         return readers
+
+    def _edges_of(self, slot: int) -> tuple[float, ...] | None:
+        """Return every constant that a signal is compared with, ascending; None when it is read in other ways too."""
+        found: set[float] = set()
+        for index in self._readers[slot]:
+            bounds = self._rules[index].bounds(slot)
+            if bounds is None:
+                return None
+            found.update(bounds)
+        return tuple(sorted(found))
 
     # ---- the door -------------------------------------------------------------------------------------------------
 
@@ -98,9 +111,10 @@ class Engine:
     @property
     def wake_at(self) -> int | None:
         """When something may change without a new event; the shell then steps with any later time."""
-        return min(
-            (due for due in (self._rule_due(), self._outage_due, self._settled_due) if due is not None), default=None
-        )
+        due = self._rule_due()
+        if self._outage_due is not None or self._settled_due is not None:
+            due = earlier(due, earlier(self._outage_due, self._settled_due))
+        return due
 
     # ---- deadlines ------------------------------------------------------------------------------------------------
 
@@ -132,12 +146,32 @@ class Engine:
     def _apply(self, t: int, changes: Iterable[tuple[int, Signal]], effects: list[Effect]) -> None:
         values, faults = self.board.values, self.board.faults
         touched: set[int] = set()
-        for slot, signal in changes:
-            if values[slot] != signal.value or faults[slot] is not signal.fault:
-                values[slot], faults[slot] = signal
-                touched.update(self._readers[slot])
+        for slot, (value, fault) in changes:
+            if values[slot] != value or faults[slot] is not fault:
+                values[slot], faults[slot] = value, fault
+                if self._crossed(slot, value):
+                    touched.update(self._readers[slot])
         if touched:
             self._settle(t, touched, effects)
+
+    def _crossed(self, slot: int, value: float | str | None) -> bool:
+        """Return whether a changed signal can change any truth: not while it stays between the same two edges."""
+        place = self._place(slot, value)
+        if place is not None and place == self._between[slot]:
+            return False
+        self._between[slot] = place
+        return True
+
+    def _place(self, slot: int, value: float | str | None) -> int | None:
+        """Return between which edges a value stands, on an edge being a place of its own; None where that says nothing.
+
+        While a value stays in its place, no comparison with it changes.
+        """
+        edges = self._edges[slot]
+        if edges is None or not isinstance(value, float):
+            return None
+        value = round(value, DIGITS)
+        return bisect_left(edges, value) + bisect_right(edges, value)
 
     def _prove(self, t: int, effects: list[Effect]) -> None:
         """Tell every actuator its state, again if need be, now that the link works."""
@@ -177,6 +211,7 @@ class Engine:
         self._fallback, self._proven, self._settled_due = Fallback.AS_FOUND, False, None
         self._outage_due = t + self.site.link_tolerance
         self.board.forget()
+        self._between = [None] * len(self._edges)
         for rule in self._rules:
             rule.begin(t, self.now)
         for actuator in self._actuators:
@@ -193,7 +228,7 @@ class Engine:
 
     def _settle(self, t: int, rules: Iterable[int], effects: list[Effect]) -> None:
         """Judge `rules`, arbitrate what they ask, and repeat for rules that read what changed."""
-        pending = set(rules)
+        pending = rules if isinstance(rules, set) else set(rules)
         for _ in range(MOST_PASSES):
             if not pending:
                 return
@@ -204,21 +239,21 @@ class Engine:
     def _pass(self, t: int, rules: set[int], effects: list[Effect]) -> set[int]:
         """Judge `rules` from one snapshot, then arbitrate; return the rules that read an actuator that changed."""
         touched = {self._actuator_of[index] for index in sorted(rules) if self._judge(t, index, effects)}
-        changed = [
-            self._actuators[index] for index in sorted(touched) if self._decide(t, self._actuators[index], effects)
-        ]
-        return self._readers_of(changed)
+        if not touched:
+            return touched
+        actuators = [self._actuators[index] for index in sorted(touched)]
+        return self._readers_of([actuator for actuator in actuators if self._decide(t, actuator, effects)])
 
     def _judge(self, t: int, index: int, effects: list[Effect]) -> bool:
         """Bring one rule up to `t`; return whether its actuator must be arbitrated again."""
         rule = self._rules[index]
-        was, deadline = (rule.in_force, rule.latched), rule.deadline
+        in_force, latched, deadline = rule.in_force, rule.latched, rule.deadline
         changed = rule.judge(t, self._grace.until)
-        if rule.deadline is not None and rule.deadline != deadline:
+        if rule.deadline != deadline and rule.deadline is not None:
             heapq.heappush(self._heap, (rule.deadline, index))
         if changed:
             self._meet(rule)
-            if was != (rule.in_force, rule.latched):
+            if in_force != rule.in_force or latched != rule.latched:
                 effects.append(_rule_changed(t, rule))
         return changed
 
@@ -331,6 +366,7 @@ class Engine:
         self._outage_due, self._settled_due = saved["outage_due"], saved["settled_due"]
         self._grace.restore(saved["grace"])
         self.board.restore(saved["board"])
+        self._between = [self._place(slot, value) for slot, value in enumerate(self.board.values)]
         for rule, state in zip(self._rules, saved["rules"], strict=True):
             rule.restore(state)
         for one, (decided, sent, since) in zip(self._actuators, saved["actuators"], strict=True):

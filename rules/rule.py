@@ -122,7 +122,7 @@ class _Watch:
         truth = self.compiled.evaluate(t)
         if truth != UNKNOWN:
             self.since = self.decided_by = None
-            return Side(truth)
+            return T if truth else F
         if self.since is None:
             self.since = t
         limit = max(self.since + tolerance, grace_until)
@@ -167,6 +167,16 @@ class Rule:
         self.from_side = self.until_side = U
         self.deadline: int | None = None
 
+    def bounds(self, slot: int) -> list[float] | None:
+        """Return the constants that the signal in `slot` is compared with, or None when it is read in another way."""
+        found: list[float] = []
+        for watch in self._watches():
+            bounds = watch.compiled.bounds.get(slot, [])
+            if bounds is None:
+                return None
+            found += bounds
+        return found
+
     @property
     def protective(self) -> bool:
         """Whether the rule is a trip or an interlock."""
@@ -179,10 +189,14 @@ class Rule:
 
     def judge(self, t: int, grace_until: int) -> bool:
         """Bring the rule up to `t`; return whether anything that others see has changed."""
-        before = (self.in_force, self.latched, self.from_side, self.until_side)
         decl = self.decl
         from_ = self.from_.look(t, decl.unknown_for, grace_until)
         until = _MIRROR[from_] if self.until is None else self.until.look(t, decl.unknown_for, grace_until)
+        if from_ is self.from_side and until is self.until_side and from_ is not X and until is not X:
+            # The table is idempotent, and so is the latch: with both sides as they were, nothing else can have changed.
+            self.deadline = self._next_change(t)
+            return False
+        before = (self.in_force, self.latched, self.from_side, self.until_side)
         self.from_side, self.until_side = from_, until
         choice = self._choice(t, from_, until)
         self.in_force = self.latched or self._verdicts[from_, until, self.in_force, choice]
@@ -255,12 +269,23 @@ class Rule:
 
     def _next_change(self, t: int) -> int | None:
         """Return when the rule may next change by itself."""
-        times = [watch.next_change(t) for watch in self._watches()]
+        soonest = self.from_.next_change(t)
+        if self.until is not None:
+            soonest = earlier(soonest, self.until.next_change(t))
+        if self.from_side is not X and self.until_side is not X:
+            return soonest
         deciding = self._deciding(self.from_side, self.until_side)
         if deciding is not None and isinstance(said := self._said(deciding), Rhythm):
             phase = _phase(t, deciding, said)
-            times.append(t + (said.act_for if phase < said.act_for else said.every) - phase)
-        return min((time for time in times if time is not None), default=None)
+            soonest = earlier(soonest, t + (said.act_for if phase < said.act_for else said.every) - phase)
+        return soonest
+
+
+def earlier(one: int | None, other: int | None) -> int | None:
+    """Return the earlier of two times, where None is never."""
+    if one is None or (other is not None and other < one):
+        return other
+    return one
 
 
 def _phase(t: int, deciding: _Watch, rhythm: Rhythm) -> int:

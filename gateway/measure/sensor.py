@@ -141,7 +141,9 @@ class Sensor:
             if happens is Happens.ACCEPTED:
                 self.accepted += 1
                 self.used = reading
-                self._judge.happens(happens, t)
+                if self._judge.happens(happens, t) is State.GOOD and not self.on_change:
+                    self.signal = Signal(reading.value, Fault.NONE)  # as `_settle` would; nearly all readings are this
+                    return True
                 changed = True
             else:
                 self.rejected += 1

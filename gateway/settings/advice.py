@@ -5,7 +5,8 @@ from collections.abc import Iterator
 from gateway.plan import PlantPlan
 from gateway.settings.models import Site
 from gateway.settings.names import full, parts
-from rules.conditions.tree import And, AtLeast, Comparison, Condition, Held, Literal, Name, Not, Or, Relation, Sum, Term
+from rules.conditions.compile import constant
+from rules.conditions.tree import And, AtLeast, Comparison, Condition, Held, Name, Not, Or, Relation
 from rules.model import OnUnknown, Rank, RuleDecl
 
 
@@ -55,7 +56,7 @@ def _about_rules(site: Site, plan: PlantPlan) -> Iterator[str]:
 
 def _above_brim(rule: RuleDecl, brims: dict[str, float]) -> Iterator[str]:
     for comparison in _comparisons(rule.from_):
-        left, bound = comparison.left, _constant(comparison.right)
+        left, bound = comparison.left, constant(comparison.right)
         brim = brims.get(left.name) if isinstance(left, Name) else None
         upward = comparison.relation in {Relation.ABOVE, Relation.AT_LEAST}
         if brim is not None and bound is not None and upward and bound >= brim:
@@ -73,16 +74,3 @@ def _comparisons(node: Condition) -> Iterator[Comparison]:
                 yield from _comparisons(part)
         case _:
             return
-
-
-def _constant(term: Term) -> float | None:
-    """Return what a term is worth if it never changes."""
-    match term:
-        case Literal() | Name():
-            return None if term.quantity is None else term.quantity.value
-        case Sum():
-            left, right = _constant(term.left), _constant(term.right)
-            return None if left is None or right is None else left + (-right if term.minus else right)
-        case _:
-            inner = _constant(term.term)
-            return None if inner is None else term.factor * inner

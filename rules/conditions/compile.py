@@ -141,7 +141,7 @@ class _Timer:
 class Compiled:
     """One condition with its timers."""
 
-    __slots__ = ("_board", "_timers", "evaluate", "explain", "inputs")
+    __slots__ = ("_board", "_timers", "bounds", "evaluate", "explain", "inputs")
 
     def __init__(
         self, board: Board, inputs: Sequence[int], evaluate: Evaluate, explain: Explain, timers: Sequence[_Timer]
@@ -149,11 +149,14 @@ class Compiled:
         self._board = board
         self._timers = tuple(timers)
         self.inputs = tuple(sorted(set(inputs)))
+        self.bounds: dict[int, list[float] | None] = {}  # see `_Workshop.bounds`
         self.evaluate = evaluate
         self.explain = explain
 
     def next_change(self, t: int) -> int | None:
         """Return the earliest time after `t` at which the truth may change by itself."""
+        if not self._timers:
+            return None
         soonest: int | None = None
         for timer in self._timers:
             due = timer.next_change(t)
@@ -186,7 +189,9 @@ def compile_condition(tree: Condition, board: Board) -> Compiled:
     """Return `tree`, which has been checked, ready to be evaluated on `board`."""
     workshop = _Workshop(board)
     evaluate, explain = workshop.condition(tree)
-    return Compiled(board, workshop.inputs, evaluate, explain, workshop.timers)
+    compiled = Compiled(board, workshop.inputs, evaluate, explain, workshop.timers)
+    compiled.bounds = workshop.bounds
+    return compiled
 
 
 class _Workshop:
@@ -196,6 +201,9 @@ class _Workshop:
         self.board = board
         self.inputs: list[int] = []
         self.timers: list[_Timer] = []
+        # For each slot that is only compared with constants, those constants: while a value stays between the same two
+        # of them, no truth changes. None for a slot that is read in any other way.
+        self.bounds: dict[int, list[float] | None] = {}
 
     def condition(self, node: Condition) -> tuple[Evaluate, Explain]:
         match node:
@@ -221,6 +229,7 @@ class _Workshop:
     def _slot(self, name: str) -> int:
         slot = self.board.slot[name]
         self.inputs.append(slot)
+        self.bounds[slot] = None
         return slot
 
     def number(self, term: Term) -> _Number:
@@ -251,6 +260,8 @@ class _Workshop:
     def _comparison(self, node: Comparison) -> tuple[Evaluate, Explain]:
         test = _TEST[node.relation]
         fast = self._against_constant(node)
+        if fast is not None:
+            return self._explained(node, fast, (node.left, node.right))
         left, right = self.number(node.left), self.number(node.right)
 
         def evaluate(_: int) -> int:
@@ -259,17 +270,19 @@ class _Workshop:
                 return UNKNOWN
             return TRUE if test(round(a, DIGITS), round(b, DIGITS)) else FALSE
 
-        return self._explained(node, fast or evaluate, (node.left, node.right))
+        return self._explained(node, evaluate, (node.left, node.right))
 
     def _against_constant(self, node: Comparison) -> Evaluate | None:
-        """Return the fast form of the commonest comparison, a signal with a constant; its answers are the same."""
-        left, right = node.left, node.right
-        if not (
-            isinstance(left, Name) and left.quantity is None and isinstance(right, Literal | Name) and right.quantity
-        ):
+        """Return the form for the commonest comparison, a signal with a constant; None when it is not one."""
+        left, bound = node.left, constant(node.right)
+        if not isinstance(left, Name) or left.quantity is not None or bound is None:
             return None
-        slot, values, test = self._slot(left.name), self.board.values, _TEST[node.relation]
-        bound = round(right.quantity.value, DIGITS)
+        slot, values, test = self.board.slot[left.name], self.board.values, _TEST[node.relation]
+        bound = round(bound, DIGITS)
+        self.inputs.append(slot)
+        bounds = self.bounds.setdefault(slot, [])
+        if bounds is not None:
+            bounds.append(bound)
 
         def evaluate(_: int) -> int:
             value = values[slot]
@@ -356,6 +369,21 @@ class _Workshop:
             }
 
         return evaluate, explain
+
+
+def constant(term: Term) -> float | None:
+    """Return what a checked term is worth when it never changes, else None."""
+    match term:
+        case Literal() | Name():
+            return None if term.quantity is None else term.quantity.value
+        case Sum():
+            left, right = constant(term.left), constant(term.right)
+            return None if left is None or right is None else left + (-right if term.minus else right)
+        case Product():
+            inner = constant(term.term)
+            return None if inner is None else term.factor * inner
+        case _:
+            assert_never(term)
 
 
 def _sum(left: _Number, right: _Number, sign: float) -> _Number:
