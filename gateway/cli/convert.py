@@ -44,7 +44,7 @@ def raw_of(text: str, plan: SensorPlan) -> float:
     wanted = read(f"1 {plan.unit}").dimension
     if dimension is not wanted:
         raise InputError(f"`{text}` is {dimension.words}; {plan.name} sends {wanted.words}, in {plan.unit}")
-    return value / plan.scale
+    return float(f"{value / plan.scale:.12g}")  # 12 digits: less than any sensor has is lost, and 1240 stays 1240
 
 
 def convert_command(
@@ -56,6 +56,8 @@ def convert_command(
     """Say what raw values read as: level, percent, volume, status.
 
     Example: brimward convert config_examples/hill-dairy condensate-drum.probe 80600 "2.9 kHz"
+
+    A raw value below nothing stands behind two dashes: brimward convert SITE TANK.SENSOR -- -5
     """
     plan = plant_plan(load(site))
     sensors = {one.name: one for one in plan.sensors}
@@ -71,7 +73,7 @@ def convert_command(
 
 def line_of(row: dict[str, Any], unit: str) -> str:
     """Return a converted value as one line for people."""
-    parts = [f"{row['raw']:g} {unit}".strip(), "→"]
+    parts = [f"{row['raw']:.12g} {unit}".strip(), "→"]
     if row["level_m"] is not None:
         parts.append(f"{row['level_m']:.4f} m")
     if row["percent"] is not None:

@@ -17,7 +17,7 @@ class Line:
 
     def __post_init__(self) -> None:
         if self.x_0 == self.x_1 or self.level_0 == self.level_1:
-            raise ValueError("the two points of a calibration differ in raw value and in level")
+            raise ValueError("the two points of a calibration must differ, in raw value and in level")
 
     def level(self, x: float) -> float:
         """Return the level at `x`."""

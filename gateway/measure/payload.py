@@ -1,7 +1,8 @@
 """From the bytes of a message to one number or one word, or to the reason why not. Total: any bytes end in either.
 
 A plain number is text; inside JSON it is found by a pointer (RFC 6901). Nothing is guessed: a string where a number
-belongs, NaN, an infinity, a number too large, are refused.
+belongs, NaN, an infinity, a number too large, are refused. What a reason quotes of a payload is short and printable,
+since it ends on terminals and in the journal.
 """
 
 import json
@@ -11,8 +12,10 @@ from typing import Any, NoReturn
 
 LONGEST = 65_536  # bytes; a reading is never that long, and reading more would only take time
 LONGEST_NUMBER = 32  # characters: more digits than any sensor has
+LONGEST_SHOWN = 40  # characters of a payload that a reason quotes
 
-_NUMBER = re.compile(rb"[-+]?\d+(?:\.\d+)?(?:[eE][-+]?\d+)?", re.ASCII)
+_NUMBER = re.compile(rb"[-+]?[0-9]+(?:\.[0-9]+)?(?:[eE][-+]?[0-9]+)?")
+_INDEX = re.compile(r"0|[1-9][0-9]{0,8}")  # RFC 6901 section 4: ASCII digits, no leading zeros
 _BLANK = b" \t\r\n"
 
 
@@ -41,7 +44,7 @@ class Pointer:
         for part in self._parts:
             if isinstance(document, dict) and part in document:
                 document = document[part]
-            elif isinstance(document, list) and re.fullmatch(r"0|[1-9]\d{0,8}", part) and int(part) < len(document):
+            elif isinstance(document, list) and _INDEX.fullmatch(part) and int(part) < len(document):
                 document = document[int(part)]
             else:
                 raise PayloadError(f"there is no '{self.text}' in it")
@@ -67,9 +70,16 @@ def read_word(payload: bytes, pointer: Pointer | None) -> str:
     if pointer is not None:
         return _word(pointer.find(_document(payload)), pointer.text)
     text = _text(payload).strip()
+    if not text:
+        raise PayloadError("it is empty")
     if text.startswith('"'):
-        return _word(_document(payload), "it")
+        return _word(_document(payload), "")
     return text
+
+
+def shown(text: str) -> str:
+    """Return the beginning of `text` as one printable line, fit for any terminal and any file."""
+    return "".join(one if one.isprintable() else "\N{REPLACEMENT CHARACTER}" for one in text[:LONGEST_SHOWN])
 
 
 def _plain_number(payload: bytes) -> float:
@@ -78,7 +88,7 @@ def _plain_number(payload: bytes) -> float:
         return _finite(float(text))
     if not text:
         raise PayloadError("it is empty")
-    raise PayloadError(f"it is no plain number: '{text[:LONGEST_NUMBER].decode('utf-8', 'replace')}'")
+    raise PayloadError(f"it is no plain number: '{shown(text[: 4 * LONGEST_SHOWN].decode('utf-8', 'replace'))}'")
 
 
 def _finite(number: float) -> float:
@@ -129,8 +139,10 @@ def _word(value: Any, where: str) -> str:
         case str():
             return value
         case int():
-            return str(value) if abs(value) < 10**LONGEST_NUMBER else "too large"
+            if abs(value) >= 10**LONGEST_NUMBER:
+                raise PayloadError("the number is too large")
+            return str(value)
         case float():
-            return str(int(value)) if value.is_integer() and abs(value) < 1e15 else repr(value)
+            return str(int(_finite(value))) if value.is_integer() and abs(value) < 1e15 else repr(_finite(value))
         case _:
             raise PayloadError(f"'{where}' holds {_kind(value)} where a word belongs")

@@ -11,7 +11,7 @@ from dataclasses import dataclass, field
 from typing import Any, NamedTuple
 
 from gateway.measure.judge import FAULTS, Happens, Judge, State
-from gateway.measure.payload import PayloadError, Pointer, read_number, read_word
+from gateway.measure.payload import PayloadError, Pointer, read_number, read_word, shown
 from gateway.measure.sensing.method import Converted, Method
 from gateway.measure.status import Status
 from rules.model import Fault, Signal
@@ -114,18 +114,25 @@ class Sensor:
             case Fault.NONE:
                 return self.used.reason if self.used else None
             case Fault.AWAITED:
-                return self._lost or _WAITING
+                return self._why_awaited()
             case Fault.SILENT:
                 return self._why_silent()
             case _:
-                return self.last.reason or "too few good readings since the failure" if self.last else _WAITING
+                return self._why_failed()
+
+    def _why_failed(self) -> str:
+        said = self.last.reason if self.last and self._judge.state is State.FAILED else None
+        return said or "too few good readings since the failure"
+
+    def _why_awaited(self) -> str:
+        if self.on_change and self._judge.state is not State.AWAITED:
+            return "it has not said yet whether it is alive"
+        return self._lost or _WAITING
 
     def _why_silent(self) -> str:
-        if not self.on_change:
-            return f"silent for more than {(self.plan.silent_after or 0) / 1e9:g} s"
-        if self._alive is None:
-            return "it has not said yet whether it is alive"
-        return "it says that it is not alive"
+        if self.on_change:
+            return "it says that it is not alive"
+        return f"silent for more than {(self.plan.silent_after or 0) / 1e9:g} s"
 
     # ---- what can happen ------------------------------------------------------------------------------------------
 
@@ -186,7 +193,7 @@ class Sensor:
         except PayloadError as problem:
             return Reading(t, topic, payload, None, None, Status.FAILURE, str(problem)), Happens.REJECTED
         level, status, reason, signalled, held = convert(plan, plan.method, raw)
-        if level is None or (held and self._judge.state is State.FAILED):
+        if level is None or (held and FAULTS[self._judge.state] is not Fault.NONE):
             return Reading(t, topic, payload, raw, None, Status.FAILURE, reason), _HAPPENS[signalled]
         return Reading(t, topic, payload, raw, level, status, reason), Happens.ACCEPTED
 
@@ -195,8 +202,8 @@ class Sensor:
         word = self.plan.words.get(found)
         if word is None:
             known = ", ".join(f"'{payload}'" for payload in self.plan.words)
-            reason = f"it says '{found[:40]}'; known are {known}"
-            return Reading(t, topic, payload, found[:40], None, Status.FAILURE, reason), Happens.REJECTED
+            reason = f"it says '{shown(found)}'; known are {known}"
+            return Reading(t, topic, payload, shown(found), None, Status.FAILURE, reason), Happens.REJECTED
         return Reading(t, topic, payload, found, word, Status.GOOD, None), Happens.ACCEPTED
 
     def _hear_alive(self, alive: AlivePlan, payload: bytes) -> bool:
@@ -211,7 +218,7 @@ class Sensor:
         """Work out the signal from what is known."""
         fault = FAULTS[self._judge.state]
         if fault is Fault.NONE and self.on_change and not self._alive:
-            fault = Fault.SILENT
+            fault = Fault.AWAITED if self._alive is None else Fault.SILENT
         usable = fault is Fault.NONE and self.used is not None
         self.signal = Signal(self.used.value if usable and self.used else None, fault)
 
@@ -257,13 +264,22 @@ def _unpacked(saved: list[Any] | None) -> Reading | None:
 
 
 def convert(plan: SensorPlan, method: Method, raw: float) -> Converted:
-    """Return what a raw value, in the sensor's own unit, means, its range included."""
+    """Return what a raw value, in the sensor's own unit, means, its range included. Total, for any float.
+
+    A failure that the device signals is told before the range, since it counts at once and a rejected reading does not.
+    """
     si = raw * plan.scale
+    if not math.isfinite(si):
+        return _beyond(plan, raw)
+    found = method.convert(si)
     bounds = plan.raw_range
-    if bounds is not None and not bounds[0] <= si <= bounds[1]:
+    if bounds is not None and not found.signalled and not bounds[0] <= si <= bounds[1]:
         low, high = (bound / plan.scale for bound in bounds)
         return Converted(None, Status.FAILURE, f"{raw:g} {plan.unit} is outside the range of {low:g} to {high:g}")
-    found = method.convert(si)
     if found.level is not None and not math.isfinite(found.level):
-        return Converted(None, Status.FAILURE, f"{raw:g} {plan.unit} is outside anything that can be converted")
+        return _beyond(plan, raw)
     return found
+
+
+def _beyond(plan: SensorPlan, raw: float) -> Converted:
+    return Converted(None, Status.FAILURE, f"{raw:g} {plan.unit} is outside anything that can be converted")

@@ -26,5 +26,8 @@ class Frequency:
         return Converted(self.line.level(1 / raw))
 
     def raw(self, level: float) -> float:
-        """Return the frequency in Hz at `level` in m."""
-        return 1 / self.line.x(level)
+        """Return the frequency in Hz at `level` in m; raise ValueError for a level that no capacitance belongs to."""
+        period = self.line.x(level)
+        if not 0 < period < 1 / SLOWEST:
+            raise ValueError(f"no frequency belongs to a level of {level:g} m")
+        return 1 / period

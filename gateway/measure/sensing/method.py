@@ -8,8 +8,8 @@ from gateway.measure.status import Status
 class Converted(NamedTuple):
     """What a raw value means. `level` in m, or None when it is no measurement; then `reason` says why.
 
-    `signalled`: the device itself says that it has failed. `held`: in this band the receiver keeps what it thought
-    before, good or failed.
+    `signalled`: the device itself says that it has failed. `held`: in this band a value in use stays in use, and one
+    that is not stays so.
     """
 
     level: float | None
@@ -26,4 +26,4 @@ class Method(Protocol):
         """Return what `raw` means. Never raises, for any finite number."""
 
     def raw(self, level: float) -> float:
-        """Return the raw value at `level` in m; the inverse of `convert`."""
+        """Return the raw value at `level` in m; the inverse of `convert`. Raises ValueError where there is none."""
