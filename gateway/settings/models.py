@@ -79,7 +79,9 @@ def _address(value: object) -> Address:
         raise ValueError(f"`{text}` is not a broker's address") from None
     if parts.username or parts.password:
         raise ValueError("user name and password have keys of their own: `username`, `password`")
-    if parts.scheme == "unix" and parts.path:
+    if parts.query or parts.fragment or port == 0:
+        raise ValueError(f"`{text}` is not a broker's address; a port above 0 ends it")
+    if parts.scheme == "unix" and parts.path and not parts.netloc:
         return Address(transport="unix", host=parts.path)
     if parts.scheme in {"mqtt", "mqtts"} and parts.hostname and parts.path in {"", "/"}:
         tls = parts.scheme == "mqtts"

@@ -16,7 +16,8 @@ SECOND = 1_000_000_000
 
 _VALUE = re.compile(r"\s*([-+]?[0-9]+(?:\.[0-9]+)?(?:[eE][-+]?[0-9]+)?)\s*(\S*)\s*", re.ASCII)
 _UNIT = re.compile(r"[A-Za-zµμΩ°][A-Za-z0-9µμΩ°/*^]{0,20}")
-_POWER = re.compile(r"(?<=[A-Za-zµμ])([23])(?![0-9])")  # m3 is a cubic metre
+_POWER = re.compile(r"(?<=[A-Za-zµμ])([23])(?![0-9A-Za-z])")  # m3 is a cubic metre, inH2O an inch of water
+_FACTORS = 1e-200, 1e200  # a unit beyond is a slip, and its inverse would not be a number
 _OFFSET = {"degC": (1.0, 273.15), "°C": (1.0, 273.15), "degF": (5 / 9, 459.67 * 5 / 9), "°F": (5 / 9, 459.67 * 5 / 9)}
 
 
@@ -39,11 +40,13 @@ def _unit(text: str) -> tuple[float, Dimension]:
     if not _UNIT.fullmatch(text):
         raise ValueError(f"`{text}` is not a unit")
     try:
-        one = _registry().Quantity(1.0, _POWER.sub(r"**\1", text.replace("^", "**"))).to_base_units()
+        unit = _registry().Unit(_POWER.sub(r"**\1", text.replace("^", "**")))
+        one = (1.0 * unit).to_base_units()
+        counts_from_zero = (2.0 * unit).to_base_units().magnitude == 2.0 * one.magnitude
     except Exception as problem:  # pint raises many kinds, some of them of the parser beneath it
         raise ValueError(f"`{text}` is not a unit that is known here") from problem
     dimension = _dimensions().get(one.dimensionality)
-    if dimension is None:
+    if dimension is None or not counts_from_zero or not _FACTORS[0] < one.magnitude < _FACTORS[1]:
         raise ValueError(f"`{text}` is a unit of nothing that is measured here")
     return float(one.magnitude), dimension
 
@@ -62,7 +65,10 @@ def read(text: str) -> Quantity:
         factor, zero = _OFFSET[unit]
         return Quantity(number * factor + zero, Dimension.TEMPERATURE)
     factor, dimension = _unit(unit)
-    return Quantity(_times(number, factor), dimension)
+    value = _times(number, factor)
+    if not math.isfinite(value):
+        raise ValueError(f"`{text}` is too large")
+    return Quantity(value, dimension)
 
 
 def _times(number: float, factor: float) -> float:

@@ -36,7 +36,8 @@ class Node:
     column: int
     keys: dict[str, Place] = field(default_factory=dict)  # where each key of a mapping stands
     quoted: bool = False
-    weight: int = 1
+    weight: int = 1  # how many values it holds, itself counted, aliases in full
+    height: int = 0  # levels of nesting inside
 
     def plain(self) -> Any:
         """Return the value without places."""
@@ -114,7 +115,7 @@ class _Reader:
         if depth > DEEPEST:
             raise self.refuse(_place(event), f"this is nested more than {DEEPEST} levels deep")
         if isinstance(event, yaml.AliasEvent):
-            return self.weighed(self.alias(event), _place(event))
+            return self.weighed(self.alias(event, depth), _place(event))
         tag, anchor = getattr(event, "tag", None), getattr(event, "anchor", None)
         if tag is not None:
             self.complain(_place(event), f"tags such as `{tag}` are not used in settings")
@@ -144,10 +145,12 @@ class _Reader:
             raise self.refuse(place, f"the file holds more than {MOST_VALUES} values, aliases counted in full")
         return node
 
-    def alias(self, event: yaml.AliasEvent) -> Node:
+    def alias(self, event: yaml.AliasEvent, depth: int) -> Node:
         found = self.anchors.get(event.anchor or "")
         if found is None:
             raise self.refuse(_place(event), f"the alias *{event.anchor} stands for nothing, or for itself")
+        if depth + found.height > DEEPEST:
+            raise self.refuse(_place(event), f"with this alias, values are nested more than {DEEPEST} levels deep")
         return found
 
     def sequence(self, event: yaml.SequenceStartEvent, depth: int) -> Node:
@@ -156,6 +159,7 @@ class _Reader:
             child = self.node(inner, depth + 1)
             node.value.append(child)
             node.weight += child.weight
+            node.height = max(node.height, child.height + 1)
         return node
 
     def mapping(self, event: yaml.MappingStartEvent, depth: int) -> Node:
@@ -165,6 +169,7 @@ class _Reader:
             value = self.node(next(self.events), depth + 1)
             self.put(node, key, value, _place(inner))
             node.weight += value.weight + 1
+            node.height = max(node.height, value.height + 1)
         return node
 
     def put(self, node: Node, key: Node, value: Node, place: Place) -> None:

@@ -33,10 +33,11 @@ def packets(count: int, topics: list[str]) -> list[bytes]:
     return made
 
 
-def _swallow(sock: socket.socket) -> None:
-    """Read the broker's acknowledgements, so that it never has to wait for us."""
-    while sock.recv(65_536):
-        pass
+def _swallow(sock: socket.socket, count: int) -> None:
+    """Read the broker's acknowledgements, four bytes each, so that it never has to wait for us, until all are there."""
+    left = 4 * count
+    while left > 0 and (piece := sock.recv(65_536)):
+        left -= len(piece)
 
 
 def main() -> None:
@@ -47,7 +48,7 @@ def main() -> None:
     sock.setsockopt(socket.IPPROTO_TCP, socket.TCP_NODELAY, 1)
     sock.sendall(CONNECT)
     sock.recv(4)
-    reader = threading.Thread(target=_swallow, args=(sock,), daemon=True)
+    reader = threading.Thread(target=_swallow, args=(sock, count), daemon=True)
     reader.start()
     if rate == 0:
         for first in range(0, count, 100):
@@ -57,7 +58,7 @@ def main() -> None:
         for number, packet in enumerate(made):
             time.sleep(max(0.0, began + number / rate - time.perf_counter()))
             sock.sendall(packet)
-    time.sleep(1)
+    reader.join(60)
     sock.close()
 
 

@@ -1,6 +1,7 @@
 """Messages a second at QoS 1: a bare subscriber (a), a script with a database (b), the whole gateway (c).
 
-All on one broker with unlimited in-flight, in turn, several rounds in one run; ratios of medians are the result.
+All on one kind of broker with unlimited in-flight, in turn, several rounds in one run; ratios of medians are the
+result.
 Run: `python tests/bench/throughput.py [COUNT] [ROUNDS]`.
 """
 
@@ -20,25 +21,24 @@ def measured(program: list[str], port: int, count: int) -> float:
     """Return how many messages a second a program deals with."""
     with subprocess.Popen([sys.executable, *program], stdout=subprocess.PIPE, text=True) as child:
         assert child.stdout is not None
-        assert child.stdout.readline().strip() == "ready"
+        assert (said := child.stdout.readline().strip()) == "ready", (program, said)
         subprocess.run([sys.executable, str(HERE / "blaster.py"), str(port), str(count), "0", *TOPICS], check=True)
         return count / float(child.stdout.readline())
 
 
 def rounds(count: int, times: int) -> dict[str, list[float]]:
-    """Return the figures of each program, round by round."""
-    figures: dict[str, list[float]] = {"bare": [], "script": [], "gateway": []}
-    with Mosquitto() as broker:
-        port = str(broker.port)
-        programs = {
-            "bare": [str(HERE / "subscribers.py"), "bare", port, str(count)],
-            "script": [str(HERE / "subscribers.py"), "script", port, str(count // 5)],
-            "gateway": [str(HERE / "gateway_under_load.py"), port, str(count), str(TANKS)],
-        }
-        for _ in range(times):
-            for name, program in programs.items():
-                share = count // 5 if name == "script" else count  # it is slow; a fifth is enough to see how slow
-                figures[name].append(measured(program, broker.port, share))
+    """Return the figures of each program, round by round; each has a broker to itself, all of one configuration."""
+    programs = {
+        "bare": (["subscribers.py", "bare"], count),
+        "script": (["subscribers.py", "script"], count // 5),  # slow; a fifth is enough to see how slow
+        "gateway": (["gateway_under_load.py"], count),
+    }
+    figures: dict[str, list[float]] = {name: [] for name in programs}
+    for _ in range(times):
+        for name, ((file, *words), share) in programs.items():
+            with Mosquitto() as broker:
+                program = [str(HERE / file), *words, str(broker.port), str(share)]
+                figures[name].append(measured([*program, str(TANKS)], broker.port, share))
     return figures
 
 
