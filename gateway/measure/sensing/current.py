@@ -16,16 +16,12 @@ class Current:
 
     NAMUR NE 43: up to 3.6 mA and from 21 mA on the device signals its own failure; 3.8 to 20.5 mA measures, outside
     4 to 20 mA out of specification; what the gaps between mean is not settled by the sources at hand: here a value in
-    use stays in use, and one that is not stays so. Levels in m, currents in A. Raises ValueError for an empty span.
+    use stays in use, and one that is not stays so. Levels in m, currents in A. `low` and `high` differ.
     """
 
     low: float
     high: float
     mounted_at: float | None = None
-
-    def __post_init__(self) -> None:
-        if self.low == self.high:
-            raise ValueError("the two ends of a span must differ")
 
     def convert(self, raw: float) -> Converted:
         """Return the level in m for a current in A."""
