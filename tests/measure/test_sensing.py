@@ -75,6 +75,14 @@ def test_an_oscillator_that_stands_still_has_failed() -> None:
         probe.raw(-1.0)
 
 
+@pytest.mark.parametrize("name", METHODS)
+def test_a_raw_value_beyond_any_number_is_a_failure(name: str) -> None:
+    """A value that grows to infinity in SI units is no full tank."""
+    plan = SensorPlan(name="x", topic="t", unit="Gu", scale=1e9, method=METHODS[name])
+    found = convert(plan, METHODS[name], 1e300 * 1e8)
+    assert (found.level, found.status) == (None, Status.FAILURE)
+
+
 @pytest.mark.parametrize(("volume", "level", "reason"), [(-1.0, 0.0, "less than nothing"), (1e9, 2.2, "more than")])
 def test_a_volume_that_the_tank_cannot_hold_is_out_of_specification(volume: float, level: float, reason: str) -> None:
     """It counts as empty or full, and says so."""

@@ -246,6 +246,16 @@ def test_after_a_start_a_sign_of_life_alone_is_no_state() -> None:
     assert sensor.signal == AWAITED
 
 
+def test_after_a_start_a_state_without_a_new_sign_of_life_is_not_known() -> None:
+    """Nor does an old sign of life speak for a new state."""
+    sensor = on_change()
+    tell(sensor, 1, "1", topic="alive")
+    tell(sensor, 2, "1")
+    sensor.begin(10 * SECOND)
+    tell(sensor, 11, "0")
+    assert (sensor.signal, sensor.reason) == (AWAITED, "it has not said yet whether it is alive")
+
+
 # ---- for any input ----------------------------------------------------------------------------------------------
 
 SENSORS = {
