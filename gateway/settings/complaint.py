@@ -16,8 +16,9 @@ class Complaint:
     message: str
 
     def __str__(self) -> str:
-        """Return the complaint as one line that editors can jump to."""
-        return f"{self.file}:{self.line}:{self.column}: {self.message}"
+        """Return the complaint as one printable line that editors can jump to, whatever the settings hold."""
+        text = f"{self.file}:{self.line}:{self.column}: {self.message}"
+        return "".join(one if one.isprintable() else "\N{REPLACEMENT CHARACTER}" for one in text)
 
 
 class SettingsError(BrimwardError):

@@ -4,7 +4,6 @@ Each check yields complaints with their place; none stops at the first.
 """
 
 from collections.abc import Iterator, Mapping
-from typing import Any
 
 from gateway.measure.sensing import SENSES
 from gateway.settings.assemble import ALIVE_WORDS, choice_of, condition_of, demand_of, method_of
@@ -13,7 +12,7 @@ from gateway.settings.load import SITE_FILE
 from gateway.settings.models import Actuator, Common, Rule, Sensor, Site, TankFile
 from gateway.settings.names import Names, TankScope, full, parts
 from gateway.settings.units import scale
-from gateway.settings.yaml_reader import Node
+from gateway.settings.yaml_reader import Node, place_within
 from rules.conditions.errors import ConditionError
 from rules.quantity import Dimension
 
@@ -23,20 +22,32 @@ Path = tuple[str | int, ...]
 class _Place:
     """One file of the site, for complaints about it."""
 
-    def __init__(self, file: str, node: Node) -> None:
+    def __init__(self, file: str, node: Node, text: str) -> None:
         self.file = file
         self.node = node
+        self.text = text
 
-    def say(self, path: Path, message: str, *, column: int = 0) -> Complaint:
-        """Return a complaint at the value under `path`; `column` counts from 1 within it, for text without quotes."""
-        line, start = self.node.place(*path)
-        return Complaint(self.file, line, start + max(0, column - 1), message)
+    def say(self, path: Path, message: str) -> Complaint:
+        """Return a complaint at the value under `path`, or at the nearest value around it."""
+        return Complaint(self.file, *self.node.place(*path), message)
+
+    def say_key(self, path: Path, message: str) -> Complaint:
+        """Return a complaint at the key that ends `path`."""
+        return Complaint(self.file, *self.node.key_place(*path), message)
+
+    def say_within(self, path: Path, column: int, message: str) -> Complaint:
+        """Return a complaint at a character, counted from 1, of the text under `path`."""
+        node = self.node
+        for step in path:
+            node = node.child(step) or node
+        return Complaint(self.file, *place_within(self.text, node, column), message)
 
 
 def cross_check(site: Site, nodes: Mapping[str, Node]) -> list[Complaint]:
     """Return every complaint about the site as a whole."""
-    of_tank = {node.value["tank"].value: _Place(file, node) for file, node in nodes.items() if file != SITE_FILE}
-    places = [_Place(SITE_FILE, nodes[SITE_FILE]), *(of_tank[tank] for tank in site.tanks)]
+    by_file = {file: _Place(file, node, site.texts[file]) for file, node in nodes.items()}
+    of_tank = {place.node.value["tank"].value: place for file, place in by_file.items() if file != SITE_FILE}
+    places = [by_file[SITE_FILE], *(of_tank[tank] for tank in site.tanks)]
     complaints: list[Complaint] = []
     for (_, part), place in zip(parts(site), places, strict=True):
         if isinstance(part, TankFile):
@@ -52,17 +63,17 @@ def cross_check(site: Site, nodes: Mapping[str, Node]) -> list[Complaint]:
 def _tank(tank: TankFile, place: _Place) -> Iterator[Complaint]:
     if tank.shape is not None and tank.brim is not None and tank.brim > tank.shape.height:
         yield place.say(("brim",), f"the brim is above the tank's height of {tank.shape.height:g} m")
-    if tank.brim is not None and tank.suction is not None and tank.suction >= tank.brim:
-        yield place.say(("suction",), f"the suction level is not below the brim of {tank.brim:g} m")
     if tank.brim is not None and tank.brim <= 0:
         yield place.say(("brim",), "the brim is above the lowest inside point")
+    elif tank.brim is not None and tank.suction is not None and tank.suction >= tank.brim:
+        yield place.say(("suction",), f"the suction level is not below the brim of {tank.brim:g} m")
     if tank.level is not None and tank.level not in tank.sensors:
         known = ", ".join(tank.sensors) or "none"
         yield place.say(("level",), f"`{tank.level}` is no sensor of this tank; known: {known}")
     elif tank.level is not None and tank.sensors[tank.level].senses == "contact":
         yield place.say(("level",), f"`{tank.level}` is a contact and gives no level")
     for name in set(tank.sensors) & set(tank.actuators):
-        yield place.say(("actuators", name), f"`{name}` is a sensor of this tank already")
+        yield place.say_key(("actuators", name), f"`{name}` is a sensor of this tank already")
 
 
 # ---- sensors ------------------------------------------------------------------------------------------------
@@ -95,7 +106,7 @@ def _timing(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
     if sensor.on_change is not None:
         alive: Path = (*path, "on_change", "alive", "payloads")
         for word in set(sensor.on_change.alive.payloads) - set(ALIVE_WORDS):
-            yield place.say((*alive, word), f"`{word}` is neither yes nor no")
+            yield place.say_key((*alive, word), f"`{word}` is neither yes nor no")
         if "yes" not in sensor.on_change.alive.payloads:
             yield place.say(alive, "`yes` is missing")
 
@@ -105,7 +116,7 @@ def _contact(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
         yield place.say((*path, "payloads"), "two words have the same payload")
     for key in ("calibration", "span", "unit", "range"):
         if getattr(sensor, key) is not None:
-            yield place.say((*path, key), f"a contact has no {key}")
+            yield place.say_key((*path, key), f"a contact has no {key}")
 
 
 def _unit_fits(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
@@ -117,7 +128,7 @@ def _unit_fits(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]
         if bound.dimension not in wanted:
             yield place.say((*path, "range", index), f"this is {bound.dimension.words}; expected {kinds}")
     if sensor.payloads is not None:
-        yield place.say((*path, "payloads"), "only a contact has payloads")
+        yield place.say_key((*path, "payloads"), "only a contact has payloads")
 
 
 def _bounds(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
@@ -134,7 +145,7 @@ def _bounds(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
         elif pair[0].value == pair[1].value:
             yield place.say((*path, key), "the two values are the same")
     if sensor.span is not None and sensor.senses != "current":
-        yield place.say((*path, "span"), f"`{sensor.senses}` has no span")
+        yield place.say_key((*path, "span"), f"`{sensor.senses}` has no span")
 
 
 # ---- actuators and topics -----------------------------------------------------------------------------------
@@ -161,7 +172,7 @@ def _payloads(actuator: Actuator, place: _Place, path: Path) -> Iterator[Complai
             yield place.say(path, f"the payload for `{state}` is missing")
     for word in payloads:
         if word not in actuator.states:
-            yield place.say((*path, word), f"`{word}` is none of its states: {', '.join(actuator.states)}")
+            yield place.say_key((*path, word), f"`{word}` is none of its states: {', '.join(actuator.states)}")
     if len(set(payloads.values())) < len(payloads):
         yield place.say(path, "two states have the same payload")
 
@@ -196,9 +207,9 @@ def _own(site: Site, place: _Place, path: Path, topic: str) -> Iterator[Complain
 
 def _names(site: Site, places: list[_Place]) -> Iterator[Complaint]:
     for name in {*site.file.sensors, *site.file.actuators} & set(site.tanks):
-        yield places[0].say(("sensors" if name in site.file.sensors else "actuators", name), f"`{name}` is a tank")
+        yield places[0].say_key(("sensors" if name in site.file.sensors else "actuators", name), f"`{name}` is a tank")
     for name in set(site.file.sensors) & set(site.file.actuators):
-        yield places[0].say(("actuators", name), f"`{name}` is a sensor already")
+        yield places[0].say_key(("actuators", name), f"`{name}` is a sensor already")
     seen: dict[str, str] = {}
     for name in site.tanks:
         if name.lower() in seen:
@@ -217,7 +228,7 @@ def _rules(site: Site, places: list[_Place]) -> Iterator[Complaint]:
         for name, rule in part.rules.items():
             path: Path = ("rules", name)
             if not name.strip() or len(name) > 80 or "." in name or "/" in name or not name.isprintable():
-                yield place.say(path, "a rule's name is a few words, without `.` and `/`")
+                yield place.say_key(path, "a rule's name is a few words, without `.` and `/`")
             yield from _conditions(rule, place, path, scope)
             yield from _unknown(rule, place, path)
             yield from _demand(rule, place, path, scope, trips, full(tank, name))
@@ -230,10 +241,7 @@ def _conditions(rule: Rule, place: _Place, path: Path, scope: TankScope) -> Iter
         try:
             condition_of(text, scope)
         except ConditionError as problem:
-            node: Any = place.node
-            for step in (*path, key):
-                node = node.child(step)
-            yield place.say((*path, key), problem.message, column=problem.column + node.quoted)
+            yield place.say_within((*path, key), problem.column, problem.message)
 
 
 def _unknown(rule: Rule, place: _Place, path: Path) -> Iterator[Complaint]:

@@ -98,6 +98,20 @@ def _text(value: object) -> str:
     return value
 
 
+def _pattern(value: object) -> str:
+    if isinstance(value, dict) and "typical" in value:
+        raise ValueError("`typical` is not yet supported")
+    if not isinstance(value, str) or not is_pattern(value):
+        raise ValueError(f"`{value}` is not a pattern of files within the site's folder, such as `tanks/*.yaml`")
+    return value
+
+
+def is_pattern(text: str) -> bool:
+    """Return whether `text` says where to look for files, at or below the site's folder."""
+    parts = text.split("/")
+    return "\0" not in text and not {"", ".", ".."} & set(parts) and all(p == "**" or "**" not in p for p in parts)
+
+
 def _any_quantity(value: object) -> Quantity:
     return read_as(value, *(dimension for dimension in Dimension if dimension is not Dimension.NUMBER))
 
@@ -113,6 +127,7 @@ PointerText = Annotated[Pointer, BeforeValidator(_pointer)]
 Unit = Annotated[str, BeforeValidator(_unit)]
 Zone = Annotated[str, BeforeValidator(_zone)]
 Text = Annotated[str, BeforeValidator(_text)]
+Pattern = Annotated[str, BeforeValidator(_pattern)]
 
 
 def _payloads(value: Any) -> dict[str, str]:

@@ -3,9 +3,11 @@
 import difflib
 import hashlib
 import json
+import os
 import types
 import typing
 from collections.abc import Mapping
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -13,8 +15,9 @@ from pydantic import BaseModel, ValidationError
 
 from gateway.errors import InputError
 from gateway.settings.complaint import Complaint, SettingsError
+from gateway.settings.fields import is_pattern
 from gateway.settings.models import Common, Site, SiteFile, TankFile
-from gateway.settings.yaml_reader import LONGEST_FILE, Node, read_yaml
+from gateway.settings.yaml_reader import DEEPEST, LONGEST_FILE, MOST_VALUES, Node, read_yaml
 
 SITE_FILE = "site.yaml"
 
@@ -28,12 +31,16 @@ def load(path: str | Path) -> Site:
     folder = folder.parent if folder.name == SITE_FILE else folder
     if not (folder / SITE_FILE).is_file():
         raise InputError(f"{folder}: there is no {SITE_FILE} here; a site is a folder that holds one")
-    return load_texts(_texts(folder), folder)
+    complaints: list[Complaint] = []
+    return _whole(_texts(folder, complaints), folder, complaints)
 
 
 def load_texts(texts: Mapping[str, str], folder: Path) -> Site:
     """Return the settings that `texts` (relative file name → text) hold; as `load`, for texts kept elsewhere."""
-    complaints: list[Complaint] = []
+    return _whole(texts, folder, [])
+
+
+def _whole(texts: Mapping[str, str], folder: Path, complaints: list[Complaint]) -> Site:
     files = {file: _Read(file, text, complaints) for file, text in texts.items()}
     site_file = files[SITE_FILE].model(SiteFile, complaints) if SITE_FILE in files else None
     read = {file: files[file].model(TankFile, complaints) for file in files if file != SITE_FILE}
@@ -57,31 +64,38 @@ def digest(texts: Mapping[str, str]) -> str:
 # ---- files --------------------------------------------------------------------------------------------------
 
 
-def _texts(folder: Path) -> dict[str, str]:
+def _texts(folder: Path, complaints: list[Complaint]) -> dict[str, str]:
     """Return the texts of the site's files, `site.yaml` first, then the tanks in the order of their path's bytes."""
-    texts = {SITE_FILE: _text(folder / SITE_FILE)}
-    for file in sorted(_tank_files(folder, texts[SITE_FILE]), key=lambda path: path.encode()):
-        texts[file] = _text(folder / file)
+    texts = {SITE_FILE: _text(folder, SITE_FILE, complaints)}
+    for file in sorted(_tank_files(folder, texts[SITE_FILE], complaints), key=os.fsencode):
+        texts[file] = _text(folder, file, complaints)
     return texts
 
 
-def _text(path: Path) -> str:
+def _text(folder: Path, file: str, complaints: list[Complaint]) -> str:
+    path = folder / file
     try:
-        with path.open("rb") as file:
-            return file.read(LONGEST_FILE * 4 + 1).decode("utf-8-sig")
+        with path.open("rb") as opened:
+            return opened.read(LONGEST_FILE * 4 + 1).decode("utf-8-sig")
     except UnicodeDecodeError:
-        raise SettingsError([Complaint(path.name, 1, 1, "the file is not UTF-8 text")]) from None
+        raise SettingsError([*complaints, Complaint(file, 1, 1, "the file is not UTF-8 text")]) from None
     except OSError as problem:
         raise InputError(f"{path}: cannot be read: {problem.strerror}") from None
 
 
-def _tank_files(folder: Path, site_text: str) -> set[str]:
+def _tank_files(folder: Path, site_text: str, complaints: list[Complaint]) -> set[str]:
+    """Return the files that `tanks` asks for; complain of a pattern that finds none."""
     node = read_yaml(SITE_FILE, site_text, [])
-    patterns = node.plain().get("tanks", ["tanks/*.yaml"]) if node else []
+    written = node.child("tanks") if node else None
+    patterns = ["tanks/*.yaml"] if written is None else written.plain()
     found: set[str] = set()
-    for pattern in patterns if isinstance(patterns, list) else []:
-        if isinstance(pattern, str) and pattern and not pattern.startswith("/") and ".." not in pattern:
-            found |= {path.relative_to(folder).as_posix() for path in folder.glob(pattern) if path.is_file()}
+    for index, pattern in enumerate(patterns if isinstance(patterns, list) else []):
+        if not isinstance(pattern, str) or not is_pattern(pattern):
+            continue  # complained of where the site's file is read
+        files = {path.relative_to(folder).as_posix() for path in folder.glob(pattern) if path.is_file()}
+        if node is not None and written is not None and not files - {SITE_FILE}:
+            complaints.append(Complaint(SITE_FILE, *node.place("tanks", index), f"no file is found by `{pattern}`"))
+        found |= files
     return found - {SITE_FILE}
 
 
@@ -157,8 +171,16 @@ _EXPECTATIONS = {
 
 
 def _expectation(error: Any) -> str:
-    if error["type"] == "literal_error":
-        return f"expected {error['ctx']['expected'].replace(chr(39), '')}"
+    facts = error.get("ctx", {})
+    match error["type"]:
+        case "literal_error":
+            return f"expected {facts['expected'].replace(chr(39), '')}"
+        case "greater_than_equal":
+            return f"expected {facts['ge']} or more"
+        case "less_than_equal":
+            return f"expected {facts['le']} or less"
+        case _:
+            pass
     return _EXPECTATIONS.get(error["type"], str(error["msg"]))
 
 
@@ -199,36 +221,41 @@ def _merge_likes(file: str, root: Node, complaints: list[Complaint]) -> None:
     actuators = root.child("actuators")
     if actuators is None or not isinstance(actuators.value, dict):
         return
-    done: set[str] = set()
     for name in actuators.value:
-        _merge_like(file, actuators, name, (name,), done, complaints)
+        _merge_like(file, actuators, name, (name,), complaints)
+    if sum(actuator.weight for actuator in actuators.value.values()) > MOST_VALUES:
+        message = f"the actuators hold more than {MOST_VALUES} values, `like` counted in full"
+        complaints.append(Complaint(file, actuators.line, actuators.column, message))
+        actuators.value.clear()
 
 
-def _merge_like(
-    file: str, actuators: Node, name: str, chain: tuple[str, ...], done: set[str], complaints: list[Complaint]
-) -> None:
-    own = actuators.value[name]
-    if name in done or not isinstance(own.value, dict) or "like" not in own.value:
+def _merge_like(file: str, actuators: Node, name: str, chain: tuple[str, ...], complaints: list[Complaint]) -> None:
+    own: Node = actuators.value[name]
+    if not isinstance(own.value, dict) or "like" not in own.value:
         return
-    done.add(name)
-    like: Node = own.value.pop("like")
+    like: Node = own.value["like"]
+    own = replace(own, value={key: node for key, node in own.value.items() if key != "like"})
+    actuators.value[name] = own
     other = actuators.child(str(like.value))
+    if len(chain) > DEEPEST:
+        complaints.append(Complaint(file, like.line, like.column, f"`like` is followed {DEEPEST} times at most"))
+        return
     if other is None or str(like.value) in chain:
         nearest = difflib.get_close_matches(str(like.value), [one for one in actuators.value if one != name], n=1)
         hint = f"; did you mean `{nearest[0]}`?" if nearest else ""
         message = f"`like` names another actuator of this file, not `{like.value}`{hint}"
         complaints.append(Complaint(file, like.line, like.column, message))
         return
-    _merge_like(file, actuators, str(like.value), (*chain, str(like.value)), done, complaints)
-    _merge(own, other)
+    _merge_like(file, actuators, str(like.value), (*chain, str(like.value)), complaints)
+    actuators.value[name] = _merged(own, actuators.value[str(like.value)])
 
 
-def _merge(own: Node, other: Node) -> None:
+def _merged(own: Node, other: Node) -> Node:
+    """Return `own` with what only `other` has. Neither is changed, since an alias may stand for either elsewhere."""
     if not isinstance(own.value, dict) or not isinstance(other.value, dict):
-        return
+        return own
+    value, keys = dict(own.value), dict(own.keys)
     for key, node in other.value.items():
-        if key in own.value:
-            _merge(own.value[key], node)
-        else:
-            own.value[key] = node
-            own.keys[key] = (own.line, own.column)
+        value[key] = _merged(value[key], node) if key in value else node
+        keys.setdefault(key, (own.line, own.column))
+    return replace(own, value=value, keys=keys, weight=own.weight + other.weight)

@@ -17,6 +17,7 @@ from gateway.settings.fields import (
     Length,
     Name,
     Part,
+    Pattern,
     Payloads,
     PointerText,
     Size,
@@ -79,11 +80,10 @@ def _address(value: object) -> Address:
         raise ValueError(f"`{text}` is not a broker's address") from None
     if parts.username or parts.password:
         raise ValueError("user name and password have keys of their own: `username`, `password`")
-    if parts.query or parts.fragment or port == 0:
-        raise ValueError(f"`{text}` is not a broker's address; a port above 0 ends it")
-    if parts.scheme == "unix" and parts.path and not parts.netloc:
+    whole = not parts.query and not parts.fragment and port != 0
+    if whole and parts.scheme == "unix" and parts.path and not parts.netloc:
         return Address(transport="unix", host=parts.path)
-    if parts.scheme in {"mqtt", "mqtts"} and parts.hostname and parts.path in {"", "/"}:
+    if whole and parts.scheme in {"mqtt", "mqtts"} and parts.hostname and parts.path in {"", "/"}:
         tls = parts.scheme == "mqtts"
         return Address(transport="tcp", host=parts.hostname, port=port or (8883 if tls else 1883), tls=tls)
     raise ValueError(f"`{text}` is not a broker's address; expected `mqtt://host:1883`, `mqtts://…`, `unix:///path`")
@@ -274,7 +274,7 @@ class SiteFile(Common):
     publish_under: Topic | None = None
     journal: Journal = Journal()
     startup_grace: Duration = 60 * SECOND
-    tanks: list[Text] = Field(default_factory=lambda: ["tanks/*.yaml"])
+    tanks: list[Pattern] = Field(default_factory=lambda: ["tanks/*.yaml"])
 
 
 class Site(Part):

@@ -41,12 +41,11 @@ def _unit(text: str) -> tuple[float, Dimension]:
         raise ValueError(f"`{text}` is not a unit")
     try:
         unit = _registry().Unit(_POWER.sub(r"**\1", text.replace("^", "**")))
-        one = (1.0 * unit).to_base_units()
-        counts_from_zero = (2.0 * unit).to_base_units().magnitude == 2.0 * one.magnitude
+        one = (1.0 * unit).to_base_units()  # a product is refused where a unit has a zero of its own, or is a logarithm
     except Exception as problem:  # pint raises many kinds, some of them of the parser beneath it
         raise ValueError(f"`{text}` is not a unit that is known here") from problem
     dimension = _dimensions().get(one.dimensionality)
-    if dimension is None or not counts_from_zero or not _FACTORS[0] < one.magnitude < _FACTORS[1]:
+    if dimension is None or not _FACTORS[0] < one.magnitude < _FACTORS[1]:
         raise ValueError(f"`{text}` is a unit of nothing that is measured here")
     return float(one.magnitude), dimension
 

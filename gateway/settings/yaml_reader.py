@@ -21,6 +21,7 @@ MOST_VALUES = 200_000  # values in one file, aliases counted with all that they 
 _LOADER = getattr(yaml, "CSafeLoader", yaml.SafeLoader)  # the C parser reads ten times faster, where it is there
 _WHOLE = re.compile(r"[-+]?(0|[1-9][0-9]{0,17})")
 _DECIMAL = re.compile(r"[-+]?(0|[1-9][0-9]*)\.[0-9]+([eE][-+]?[0-9]+)?")
+_BREAK = re.compile("\r\n|[\r\n\x85\u2028\u2029]")  # line breaks of YAML 1.1, section 5.4
 _WORDS: dict[str, Any] = {"true": True, "false": False, "null": None, "~": None, "": None}
 
 
@@ -73,6 +74,29 @@ class Node:
             node = node.child(step) if node else None
         last = str(path[-1])
         return node.keys[last] if node and last in node.keys else self.place(*path)
+
+
+def place_within(text: str, node: Node, column: int) -> Place:
+    """Return where the character number `column` (from 1) of the text that `node` holds stands in its file's `text`.
+
+    Blanks and line breaks change when YAML folds lines, other characters do not: so those are counted. Escapes within
+    double quotes, which no setting needs, make the place come out too early.
+    """
+    value = str(node.value)
+    at_end = column > len(value.rstrip())
+    ahead = sum(not one.isspace() for one in value[: column - 1]) - at_end
+    lines = _BREAK.split(text)[node.line - 1 :]
+    lines[0] = " " * (node.column - 1) + lines[0][node.column - 1 :]
+    if node.quoted:
+        opening = lines[0].lstrip()[:1]
+        lines[0] = "" if opening in {"|", ">"} else lines[0].replace(opening, " ", 1)
+    for line, found in enumerate(lines, node.line):
+        for place, one in enumerate(found, 1):
+            if not one.isspace():
+                if ahead <= 0:
+                    return line, place + at_end
+                ahead -= 1
+    return node.line, node.column
 
 
 def _place(event: yaml.Event) -> Place:

@@ -37,6 +37,7 @@ Node = Tree[Token]
 _PARSER = Lark.open("grammar.lark", rel_to=__file__, parser="lalr", lexer="contextual", propagate_positions=True)
 
 LONGEST = 2_000  # characters; a longer sentence is a mistake, and would only feed the parser's stack
+DEEPEST = 50  # levels of nesting; what walks a tree calls itself once a level, and a reader is lost after five
 
 # Words of the language; nothing in a site can be called by one of them.
 RESERVED = frozenset(
@@ -73,12 +74,23 @@ def parse(text: str) -> Condition:
     """Return the tree of `text`; raise ConditionError where it cannot be read."""
     if len(text) > LONGEST:
         raise ConditionError(f"a condition has at most {LONGEST} characters", 1, found=f"{len(text)} characters")
+    text = text.replace("\n", " ")  # a line break is a blank like any other, and columns count through it
     refuse_later_forms(text)
     try:
         tree = _PARSER.parse(text)
     except UnexpectedInput as problem:
         _complain(problem, text)
+    _refuse_deep(tree)
     return _condition(tree)
+
+
+def _refuse_deep(tree: Node) -> None:
+    """Complain of a tree that is nested too deeply, without calling itself."""
+    level, depth = _children(tree), 1
+    while level:
+        if depth > DEEPEST:
+            raise ConditionError(f"this is nested more than {DEEPEST} levels deep", _column(level[0]))
+        level, depth = [child for node in level for child in _children(node)], depth + 1
 
 
 def _complain(problem: UnexpectedInput, text: str) -> NoReturn:
