@@ -9,6 +9,7 @@ import contextlib
 import logging
 import os
 import select
+import sys
 import threading
 from collections import deque
 from collections.abc import Callable, Sequence
@@ -34,6 +35,7 @@ FLUSH = SECOND  # real ns between publications of values; a display needs no mor
 SNAPSHOT_EVENTS = 20_000  # inputs after which the state is saved: half a second of replay at a restart
 SNAPSHOT_EVERY = 60 * SECOND  # or real ns, if anything has come since
 CLOCK_APART = SECOND // 10  # ns that the wall clock may drift from the steady one before that is an input
+SWITCH_S = 0.0005  # how long the journal's thread may keep the interpreter from the control thread
 LONGEST_WAIT_S = 1.0  # so that the wall clock is looked at once a second
 
 Listener = Callable[[Event | LinkNews, Sequence[Effect]], None]
@@ -66,7 +68,9 @@ class Service:
         self._up_not_before = 0
         self._unsent: dict[str, bytes] = {}  # retained topics of ours that have news
         self._told: dict[str, bytes] = {}  # all of them as they stand
-        self._since: dict[str, tuple[str, int]] = {}  # what is told of a thing, and since when
+        self._values: dict[str, Value] = {}  # the newest of each tank that has not been told yet
+        self._status: dict[str, tuple[str, int]] = {}  # of each tank's level, and since when
+        self._states: dict[str, tuple[str, int]] = {}  # of each actuator, and since when
         self._flush_at = self._snapshot_at = 0
         self._snapshot_seq = 0
 
@@ -95,6 +99,7 @@ class Service:
 
     def run(self) -> None:
         """Run until `stop`; raise JournalError when the journal cannot be used at all."""
+        sys.setswitchinterval(SWITCH_S)
         self._begin()
         try:
             while not self._stopping.is_set():
@@ -167,7 +172,7 @@ class Service:
         due = [LONGEST_WAIT_S, max(0.0, (self._link.next_due - steady()) / 1e9)]
         if self.plant.wake_at is not None:
             due.append(self.clock.seconds_until(self.plant.wake_at))
-        if self._unsent:
+        if self._unsent or self._values:
             due.append(max(0.0, (self._flush_at - steady()) / 1e9))
         return min(due)
 
@@ -228,6 +233,9 @@ class Service:
         if effects or not isinstance(event, Wake):
             self._seq += 1
             self._batch.events.append(EventRow(self._seq, event.t + self.plant.offset, event))
+        for effect in effects:  # commands first: everything else can wait for a tenth of a millisecond
+            if isinstance(effect, Command):
+                self._command(effect)
         for effect in effects:
             self._do(effect)
         if self._listener and effects:
@@ -241,12 +249,11 @@ class Service:
     def _do(self, effect: Effect) -> None:
         match effect:
             case Value():
-                since = self._standing_since(f"tank {effect.tank}", effect.status, effect.at)
-                self._tell(self.topics.tank(effect.tank), compact(tank_told(effect, since)))
+                self._values[effect.tank] = effect
+                if effect.status != self._status.get(effect.tank, (None, 0))[0]:
+                    self._status[effect.tank] = (effect.status, effect.at)
                 return
-            case Command():
-                self._command(effect)
-            case Reason():
+            case Command() | Reason():
                 self._tell_actuator(effect)
             case Note():
                 self.log.warning("%s: %s", effect.about, effect.text)
@@ -265,18 +272,13 @@ class Service:
             retain=command.retain,
             expiry_s=command.expiry_s,
         )
-        self._tell_actuator(command)
         self._unsendable = self._unsendable or not sent
 
     def _tell_actuator(self, effect: Command | Reason) -> None:
-        since = self._standing_since(f"actuator {effect.actuator}", effect.state, effect.at)
-        self._tell(self.topics.actuator(effect.actuator), compact(actuator_told(effect, since)))
-
-    def _standing_since(self, thing: str, state: str, at: int) -> int:
-        """Return since when a thing stands as it does."""
-        if self._since.get(thing, ("", 0))[0] != state:
-            self._since[thing] = (state, at)
-        return self._since[thing][1]
+        name = effect.actuator
+        if self._states.get(name, (None, 0))[0] != effect.state:
+            self._states[name] = (effect.state, effect.at)
+        self._tell(self.topics.actuator(name), compact(actuator_told(effect, self._states[name][1])))
 
     def _note(self, now: int, text: str) -> None:
         """Keep something in the journal that is news of the link, not of the plant."""
@@ -294,6 +296,9 @@ class Service:
     def _flush(self) -> None:
         """Publish what has news, newest only; it harms nobody when it is late."""
         self._flush_at = steady() + FLUSH
+        for name, value in self._values.items():
+            self._tell(self.topics.tank(name), compact(tank_told(value, self._status[name][1])))
+        self._values.clear()
         for topic, payload in list(self._unsent.items()):
             if not self._link.publish(topic, payload, qos=0, retain=True, even_unproven=True):
                 return
