@@ -221,33 +221,36 @@ def _merge_likes(file: str, root: Node, complaints: list[Complaint]) -> None:
     actuators = root.child("actuators")
     if actuators is None or not isinstance(actuators.value, dict):
         return
-    for name in actuators.value:
-        _merge_like(file, actuators, name, (name,), complaints)
+    failed = [name for name in actuators.value if not _merge_like(file, actuators, name, (name,), complaints)]
+    for name in failed:
+        del actuators.value[name]  # what it lacks because of that is not complained of as well
     if sum(actuator.weight for actuator in actuators.value.values()) > MOST_VALUES:
         message = f"the actuators hold more than {MOST_VALUES} values, `like` counted in full"
         complaints.append(Complaint(file, actuators.line, actuators.column, message))
         actuators.value.clear()
 
 
-def _merge_like(file: str, actuators: Node, name: str, chain: tuple[str, ...], complaints: list[Complaint]) -> None:
+def _merge_like(file: str, actuators: Node, name: str, chain: tuple[str, ...], complaints: list[Complaint]) -> bool:
+    """Merge one actuator, first those that it rests on; return whether it could be done."""
     own: Node = actuators.value[name]
     if not isinstance(own.value, dict) or "like" not in own.value:
-        return
+        return True
     like: Node = own.value["like"]
-    own = replace(own, value={key: node for key, node in own.value.items() if key != "like"})
-    actuators.value[name] = own
-    other = actuators.child(str(like.value))
+    other = str(like.plain())
     if len(chain) > DEEPEST:
         complaints.append(Complaint(file, like.line, like.column, f"`like` is followed {DEEPEST} times at most"))
-        return
-    if other is None or str(like.value) in chain:
-        nearest = difflib.get_close_matches(str(like.value), [one for one in actuators.value if one != name], n=1)
+        return False
+    if other not in actuators.value or other in chain:
+        nearest = difflib.get_close_matches(other, [one for one in actuators.value if one != name], n=1)
         hint = f"; did you mean `{nearest[0]}`?" if nearest else ""
-        message = f"`like` names another actuator of this file, not `{like.value}`{hint}"
+        message = f"`like` names another actuator of this file, not `{other}`{hint}"
         complaints.append(Complaint(file, like.line, like.column, message))
-        return
-    _merge_like(file, actuators, str(like.value), (*chain, str(like.value)), complaints)
-    actuators.value[name] = _merged(own, actuators.value[str(like.value)])
+        return False
+    if not _merge_like(file, actuators, other, (*chain, other), complaints):
+        return False
+    own = replace(own, value={key: node for key, node in own.value.items() if key != "like"})
+    actuators.value[name] = _merged(own, actuators.value[other])
+    return True
 
 
 def _merged(own: Node, other: Node) -> Node:
