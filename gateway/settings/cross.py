@@ -18,6 +18,8 @@ from rules.quantity import Dimension
 
 Path = tuple[str | int, ...]
 
+LATER_IN_PAYLOADS = ("{seq}", "{until}")  # what a device that checks its commands will be told
+
 
 class _Place:
     """One file of the site, for complaints about it."""
@@ -175,6 +177,10 @@ def _payloads(actuator: Actuator, place: _Place, path: Path) -> Iterator[Complai
             yield place.say_key((*path, word), f"`{word}` is none of its states: {', '.join(actuator.states)}")
     if len(set(payloads.values())) < len(payloads):
         yield place.say(path, "two states have the same payload")
+    for state, payload in payloads.items():
+        for later in LATER_IN_PAYLOADS:
+            if later in payload:
+                yield place.say((*path, state), f"`{later}` is not yet supported")
 
 
 def _topics(site: Site, places: list[_Place]) -> Iterator[Complaint]:

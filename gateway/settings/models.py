@@ -249,6 +249,12 @@ class Common(Part):
     rules: dict[str, Rule] = Field(default_factory=dict)
 
 
+def _one_sensor(value: Any) -> Any:
+    if isinstance(value, dict) and "take" in value:
+        raise ValueError("`take` is not yet supported; name one sensor")
+    return value
+
+
 class TankFile(Common):
     """One tank."""
 
@@ -259,7 +265,7 @@ class TankFile(Common):
     shape: Shape | None = None
     brim: Length | None = None
     suction: Length | None = None
-    level: Name | None = None
+    level: Annotated[Name, BeforeValidator(_one_sensor)] | None = None
 
 
 class SiteFile(Common):
