@@ -11,6 +11,7 @@ from typing import Any, assert_never
 
 from gateway.effects import Command, Effect, Note, Reason, RuleChange, SensorChange, Value
 from gateway.events import ClockSet, Event, LinkDown, LinkUp, Message, Start, Stop, Wake
+from gateway.measure.payload import shown_payload
 from gateway.measure.sensor import Sensor
 from gateway.measure.status import Status
 from gateway.plan import PlantPlan, TankPlan
@@ -19,8 +20,6 @@ from rules.engine import Engine
 from rules.events import Event as CoreEvent
 from rules.events import LinkLost, LinkProven, Passed, Signals, Started
 from rules.model import Fault, Signal
-
-LONGEST_SHOWN = 200  # characters of a payload that an explanation shows
 
 
 class _Tank:
@@ -305,12 +304,11 @@ class Plant:
         used = sensor.used or sensor.last
         if used is None:
             return None
-        shown = used.payload[:LONGEST_SHOWN].decode("utf-8", "replace")
         return {
             "sensor": sensor.plan.name,
             "at": used.t + self.offset,
             "topic": used.topic,
-            "payload": shown,
+            "payload": shown_payload(used.payload),
             "raw": used.raw,
             "unit": sensor.plan.unit,
             "status": used.status.value,

@@ -10,6 +10,7 @@ from gateway.errors import InputError
 from gateway.events import Message
 from gateway.journal.reader import Reader, Span
 from gateway.journal.records import EffectRow, EventRow, told
+from gateway.measure.payload import shown_payload
 from gateway.plant import Plant
 from gateway.recall import reader_of
 from gateway.settings.assemble import plant_plan
@@ -102,7 +103,7 @@ class _Rows:
 
 
 def _of_message(at: int, event: Message) -> Row:
-    payload = event.payload[:200].decode("utf-8", "replace")
+    payload = shown_payload(event.payload)
     facts = {"record": "reading", "topic": event.topic, "payload": payload}
     marks = [word for word, true in (("retained", event.retained), ("late", event.late)) if true]
     return (

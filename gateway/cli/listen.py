@@ -10,6 +10,7 @@ import typer
 from gateway.cli.common import AsJson, SiteArgument, named, print_json
 from gateway.connect import link_options
 from gateway.link.tap import Heard, Tap
+from gateway.measure.payload import shown_payload
 from gateway.measure.sensor import Sensor
 from gateway.plan import PlantPlan
 from gateway.settings.assemble import plant_plan
@@ -89,7 +90,7 @@ class _Ear:
         self._print({**facts, "status": last.status.value, "reason": last.reason}, heard)
 
     def _print(self, facts: dict[str, Any], heard: Heard) -> None:
-        payload = heard.payload[:200].decode("utf-8", "replace")
+        payload = shown_payload(heard.payload)
         if self.as_json:
             print_json({"at": moment(time.time_ns()), "topic": heard.topic, "payload": payload, **facts})
             return

@@ -12,6 +12,7 @@ from typing import Any, NoReturn
 
 LONGEST = 65_536  # bytes; a reading is never that long, and reading more would only take time
 LONGEST_NUMBER = 32  # characters: more digits than any sensor has
+SHOWN_OF_PAYLOAD = 200  # characters of a payload that an explanation shows
 LONGEST_SHOWN = 40  # characters of a payload that a reason quotes
 
 _NUMBER = re.compile(rb"[-+]?[0-9]+(?:\.[0-9]+)?(?:[eE][-+]?[0-9]+)?")
@@ -77,9 +78,14 @@ def read_word(payload: bytes, pointer: Pointer | None) -> str:
     return text
 
 
-def shown(text: str) -> str:
+def shown(text: str, most: int = LONGEST_SHOWN) -> str:
     """Return the beginning of `text` as one printable line, fit for any terminal and any file."""
-    return "".join(one if one.isprintable() else "\N{REPLACEMENT CHARACTER}" for one in text[:LONGEST_SHOWN])
+    return "".join(one if one.isprintable() else "\N{REPLACEMENT CHARACTER}" for one in text[:most])
+
+
+def shown_payload(payload: bytes) -> str:
+    """Return the beginning of a payload as one printable line of text, whatever its bytes."""
+    return shown(payload[: 4 * SHOWN_OF_PAYLOAD].decode("utf-8", "replace"), SHOWN_OF_PAYLOAD)
 
 
 def _plain_number(payload: bytes) -> float:
