@@ -112,19 +112,33 @@ class Service:
 
     def _begin(self) -> None:
         """Take up where the journal ends, and start."""
-        reader = read_or_none(self.site.journal_path)
-        if reader is not None:
-            self._seq = reader.last_seq()
-            before = recall(reader, self.site)
-            reader.close()
-            if before is not None:
-                self._take_over(*before)
+        self._take_up()
         now, wall = self.clock.now(), self.clock.wall()
         self._writer.keep_settings(self.site.digest, wall, self.site.texts)
         self._snapshot()  # what the start begins from, under the settings that are in force now
         self._step(Start(now, wall - now))
         self._submit()
         self._link.start()
+
+    def _take_up(self) -> None:
+        """Take up the state that the journal ends with.
+
+        A state that cannot be taken up, whatever the reason, is no reason not to protect what there is: it is said
+        loudly, and the gateway starts with nothing known.
+        """
+        reader = read_or_none(self.site.journal_path)
+        if reader is None:
+            return
+        self._seq = reader.last_seq()
+        try:
+            before = recall(reader, self.site)
+        except Exception as problem:  # noqa: BLE001 - see above
+            self._note(self.clock.now(), f"the state from before is lost, latches with it: {problem!r}")
+            return
+        finally:
+            reader.close()
+        if before is not None:
+            self._take_over(*before)
 
     def _take_over(self, before: Plant, digest: str) -> None:
         """Take over the state from before; where settings have changed since, what has the same name and meaning."""

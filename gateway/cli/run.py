@@ -35,6 +35,8 @@ def run_command(
     with Lock(settings.journal_path.parent):
         embedded = EmbeddedBroker() if settings.file.broker.url.transport == "embedded" else None
         port = embedded.start() if embedded else None
+        if port is not None:
+            log.info("the embedded broker listens on 127.0.0.1:%d", port)
         options = link_options(settings, topics, port=port)
         service = Service(settings, options, Clock(), log)
 

@@ -29,8 +29,6 @@ from gateway.settings.fields import (
 )
 from gateway.settings.units import SECOND
 
-DAY = 86_400 * SECOND
-
 
 def _known(kind: str, table: dict[str, bool]) -> BeforeValidator:
     """Return a check that a word is in a table, and supported yet."""
@@ -108,8 +106,9 @@ class Broker(Part):
 class Journal(Part):
     """The audit trail."""
 
+    LATER: ClassVar[frozenset[str]] = frozenset({"keep_readings", "spool"})
+
     file: Text = "var/journal.db"
-    keep_readings: Duration = 400 * DAY
 
 
 class Shape(Part):
@@ -263,7 +262,7 @@ class TankFile(Common):
     tank: Name
     title: Text | None = None
     shape: Shape | None = None
-    brim: Length | None = None
+    brim: Size | None = None
     suction: Length | None = None
     level: Annotated[Name, BeforeValidator(_one_sensor)] | None = None
 
