@@ -60,6 +60,8 @@ class Reading(NamedTuple):
     reason: str | None
 
 
+FARTHEST = 1e6  # m; no tank is so deep, and what is computed from a level stays far from overflowing
+
 _WAITING = "nothing has come yet"
 _HAPPENS = {True: Happens.SIGNALLED, False: Happens.REJECTED}
 
@@ -276,7 +278,7 @@ def convert(plan: SensorPlan, method: Method, raw: float) -> Converted:
     if bounds is not None and not found.signalled and not bounds[0] <= si <= bounds[1]:
         low, high = (bound / plan.scale for bound in bounds)
         return Converted(None, Status.FAILURE, f"{raw:g} {plan.unit} is outside the range of {low:g} to {high:g}")
-    if found.level is not None and not math.isfinite(found.level):
+    if found.level is not None and not abs(found.level) <= FARTHEST:
         return _beyond(plan, raw)
     return found
 

@@ -65,9 +65,7 @@ def cross_check(site: Site, nodes: Mapping[str, Node]) -> list[Complaint]:
 def _tank(tank: TankFile, place: _Place) -> Iterator[Complaint]:
     if tank.shape is not None and tank.brim is not None and tank.brim > tank.shape.height:
         yield place.say(("brim",), f"the brim is above the tank's height of {tank.shape.height:g} m")
-    if tank.brim is not None and tank.brim <= 0:
-        yield place.say(("brim",), "the brim is above the lowest inside point")
-    elif tank.brim is not None and tank.suction is not None and tank.suction >= tank.brim:
+    if tank.brim is not None and tank.suction is not None and tank.suction >= tank.brim:
         yield place.say(("suction",), f"the suction level is not below the brim of {tank.brim:g} m")
     if tank.level is not None and tank.level not in tank.sensors:
         known = ", ".join(tank.sensors) or "none"

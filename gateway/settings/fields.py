@@ -11,6 +11,8 @@ from gateway.settings.units import SECOND, read_as, scale
 from rules.conditions.parse import RESERVED
 from rules.quantity import Dimension, Quantity
 
+SMALLEST, LARGEST = 1e-6, 1e6  # m; levels are told apart to 1e-6 m, and areas and volumes stay finite numbers
+
 _NAME = re.compile(r"[A-Za-z][A-Za-z0-9-]{0,63}")
 
 
@@ -24,9 +26,12 @@ def _dimension(*wanted: Dimension) -> BeforeValidator:
     return BeforeValidator(lambda value: read_as(value, *wanted).value)
 
 
-def _positive(value: float) -> float:
-    if not value > 0:
+def _size(value: object) -> object:
+    size = read_as(value, Dimension.LENGTH).value
+    if not size > 0:
         raise ValueError("expected more than nothing")
+    if not SMALLEST <= size <= LARGEST:
+        raise ValueError(f"`{value}` is no size of a tank")
     return value
 
 
@@ -117,7 +122,7 @@ def _any_quantity(value: object) -> Quantity:
 
 
 Length = Annotated[float, _dimension(Dimension.LENGTH)]
-Size = Annotated[Length, BeforeValidator(lambda value: _positive(read_as(value, Dimension.LENGTH).value) and value)]
+Size = Annotated[Length, BeforeValidator(_size)]
 Duration = Annotated[int, BeforeValidator(_duration)]
 AnyQuantity = Annotated[Quantity, BeforeValidator(_any_quantity)]
 Name = Annotated[str, BeforeValidator(name)]

@@ -6,7 +6,7 @@ import json
 import os
 import types
 import typing
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -119,6 +119,7 @@ class _Read:
         self.file = file
         self.node = read_yaml(file, text, complaints)
         if self.node is not None:
+            complaints += _without_value(file, self.node)
             _merge_likes(file, self.node, complaints)
 
     def complaint(self, path: tuple[str | int, ...], message: str, *, at_key: bool = False) -> Complaint:
@@ -133,8 +134,16 @@ class _Read:
         try:
             return kind.model_validate(self.node.plain())
         except ValidationError as problem:
-            complaints.extend(self._translated(kind, error) for error in problem.errors(include_url=False))
+            errors = problem.errors(include_url=False)
+            complaints.extend(self._translated(kind, error) for error in errors if not self._is_empty(error["loc"]))
             return None
+
+    def _is_empty(self, path: tuple[str | int, ...]) -> bool:
+        """Return whether nothing is written at `path`; `_without_value` has complained of it already."""
+        node = self.node
+        for step in path:
+            node = node.child(step) if node else None
+        return node is not None and node.value is None
 
     def _translated(self, kind: type[BaseModel], error: Any) -> Complaint:
         """Return one of pydantic's errors in our words, at its place."""
@@ -149,6 +158,20 @@ class _Read:
                 return self.complaint(path, str(error["ctx"]["error"]), at_key="[key]" in error["loc"])
             case _:
                 return self.complaint(path, f"`{_shown(error['input'])}`: {_expectation(error)}")
+
+
+def _without_value(file: str, node: Node) -> Iterator[Complaint]:
+    """Complain of keys and items that nothing is written for: nobody can tell what was meant."""
+    if isinstance(node.value, dict):
+        for key, inner in node.value.items():
+            if inner.value is None:
+                yield Complaint(file, *node.keys[key], f"`{key}` has no value; give it one, or leave the key out")
+            yield from _without_value(file, inner)
+    elif isinstance(node.value, list):
+        for inner in node.value:
+            if inner.value is None:
+                yield Complaint(file, inner.line, inner.column, "there is nothing here; expected a value")
+            yield from _without_value(file, inner)
 
 
 def _shown(value: Any) -> str:

@@ -38,7 +38,13 @@ IN_A_TANK = [
     ("level: head", "level: ^float", "`float` is a contact and gives no level"),
     # levels
     ("brim: 2.00 m", "brim: ^2.30 m", "the brim is above the tank's height of 2.2 m"),
-    ("brim: 2.00 m", "brim: ^0 m", "the brim is above the lowest inside point"),
+    ("brim: 2.00 m", "brim: ^0 m", "expected more than nothing"),
+    ("brim: 2.00 m", "brim: ^-1 m", "expected more than nothing"),
+    ("brim: 2.00 m", "brim: ^1e-300 m", "`1e-300 m` is no size of a tank"),
+    ("brim: 2.00 m", "^brim:", "`brim` has no value; give it one, or leave the key out"),
+    ("topic: farm/pump", "^topic: ", "`topic` has no value; give it one, or leave the key out"),
+    ("safe: off", "safe: off, states: [off, on, ^~]", "there is nothing here; expected a value"),
+    ("diameter: 1.60 m", "diameter: ^1e200 m", "`1e200 m` is no size of a tank"),
     ("suction: 0.25 m", "suction: ^2.00 m", "the suction level is not below the brim of 2 m"),
     # shapes
     ("form: vertical cylinder", "form: ^barrel", "`barrel` is no form; expected one of vertical cylinder, "),
@@ -164,7 +170,7 @@ IN_THE_SITE = [
     ("1883}", "1883, password: ^{env: A, file: b}}", "a secret is not written here"),
     ("1883}", "1883, protocol: ^4}", "`4`: expected auto, 5 or 3.1.1"),
     ("1883}", "1883, ^usr: me}", "`usr` is not known here; did you mean `url`?"),
-    ("site: farm", "site: farm\njournal: {^path: x}", "`path` is not known here; known: file, keep_readings"),
+    ("site: farm", "site: farm\njournal: {^path: x}", "`path` is not known here; known: file"),
     ("site: farm", "site: farm\nsensors: {^sump: {topic: t, senses: contact, expect_every: 1 s}}", "`sump` is a tank"),
 ]
 

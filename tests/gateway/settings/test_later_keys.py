@@ -45,6 +45,7 @@ ACTUATOR_KEYS = {
 }
 RULE_KEYS = {"alarm: high", "outranks: other"}
 SHAPE_KEYS = {"bottom: {form: conical}", "ends: {form: ellipsoidal}", "table: x.csv", "top: 1 m"}
+JOURNAL_KEYS = {"keep_readings: 400 d", "spool: x"}
 CALIBRATION_KEYS = {"fit: smooth", "covers: 1 m"}
 
 # Where a key is put in: what stands before it in the tank's file.
@@ -76,6 +77,13 @@ def test_a_key_of_the_site_that_comes_later_is_refused_by_name(line: str) -> Non
     assert complaints(SITE + line + "\n") == [f"site.yaml:3:1: `{line.split(':', maxsplit=1)[0]}` is not yet supported"]
 
 
+@pytest.mark.parametrize("line", sorted(JOURNAL_KEYS))
+def test_a_key_of_the_journal_that_comes_later_is_refused_by_name(line: str) -> None:
+    """The same within `journal`."""
+    found = complaints(SITE + f"journal: {{{line}}}\n")
+    assert found == [f"site.yaml:3:11: `{line.split(':', maxsplit=1)[0]}` is not yet supported"]
+
+
 @pytest.mark.parametrize(
     ("part", "tested"),
     [
@@ -87,6 +95,7 @@ def test_a_key_of_the_site_that_comes_later_is_refused_by_name(line: str) -> Non
         (models.Shape, SHAPE_KEYS),
         (models.Calibration, CALIBRATION_KEYS),
         (models.Command, {"repeat: 30 s"}),
+        (models.Journal, JOURNAL_KEYS),
         (models.Broker, set()),
     ],
 )
