@@ -40,6 +40,13 @@ class Pointer:
         self.text = text
         self._parts = tuple(part.replace("~1", "/").replace("~0", "~") for part in text.split("/")[1:])
 
+    def __eq__(self, other: object) -> bool:
+        """Return whether the other one is the same pointer; settings that say the same are equal."""
+        return isinstance(other, Pointer) and other.text == self.text
+
+    def __hash__(self) -> int:
+        return hash(self.text)
+
     def find(self, document: Any) -> Any:
         """Return what the pointer points to in `document`; raise PayloadError when it finds nothing."""
         for part in self._parts:
