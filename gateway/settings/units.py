@@ -41,11 +41,12 @@ def _unit(text: str) -> tuple[float, Dimension]:
         raise ValueError(f"`{text}` is not a unit")
     try:
         unit = _registry().Unit(_POWER.sub(r"**\1", text.replace("^", "**")))
-        one = (1.0 * unit).to_base_units()  # a product is refused where a unit has a zero of its own, or is a logarithm
+        one, two = (1.0 * unit).to_base_units(), (2.0 * unit).to_base_units()
     except Exception as problem:  # pint raises many kinds, some of them of the parser beneath it
         raise ValueError(f"`{text}` is not a unit that is known here") from problem
     dimension = _dimensions().get(one.dimensionality)
-    if dimension is None or not _FACTORS[0] < one.magnitude < _FACTORS[1]:
+    is_factor = math.isclose(two.magnitude, 2 * one.magnitude)  # neither a zero of its own nor a logarithm
+    if dimension is None or not is_factor or not _FACTORS[0] < one.magnitude < _FACTORS[1]:
         raise ValueError(f"`{text}` is a unit of nothing that is measured here")
     return float(one.magnitude), dimension
 
