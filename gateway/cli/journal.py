@@ -5,7 +5,7 @@ from typing import Annotated, Any
 import typer
 
 from gateway.cli.common import AsJson, SiteArgument, named, print_json
-from gateway.cli.times import read_time, shown
+from gateway.cli.times import read_end, read_time, shown
 from gateway.errors import InputError
 from gateway.events import Message
 from gateway.journal.reader import Reader, Span
@@ -45,7 +45,7 @@ def list_command(
     settings = load(site)
     plant = Plant(plant_plan(settings))
     zone = settings.file.timezone
-    span = Span(read_time(begin, zone) if begin else 0, read_time(end, zone) if end else Span().end)
+    span = Span(read_time(begin, zone) if begin else 0, read_end(end, zone) if end else Span().end)
     if kind is not None and kind not in KINDS:
         raise InputError(f"`{kind}` is no kind; known: {', '.join(KINDS)}")
     about = named(actuator, plant.plan.commands, "actuator") if actuator else None

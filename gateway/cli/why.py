@@ -5,7 +5,7 @@ from typing import Annotated
 import typer
 
 from gateway.cli.common import AsJson, SiteArgument, named, print_json
-from gateway.cli.times import read_time, shown
+from gateway.cli.times import read_end, shown
 from gateway.errors import InputError
 from gateway.journal.reader import Span
 from gateway.plant import Plant
@@ -32,7 +32,7 @@ def why_command(
     settings = load(site)
     zone = settings.file.timezone
     reader = reader_of(settings)
-    when = read_time(at, zone) if at else Span().end
+    when = read_end(at, zone) if at else Span().end
     found = recall_at(reader, settings, when) if at else recall(reader, settings)
     if found is None:
         raise InputError("the journal does not reach back to that time" if at else "nothing has happened yet")
