@@ -7,6 +7,7 @@ from typing import Any
 from gateway.effects import Command, Reason, Value
 
 MILLI = 1_000_000  # ns
+FIRST_YEAR, LAST_YEAR = 1970, 2261  # what ns since 1970 reach in 63 bits
 
 
 def moment(at: int) -> str:

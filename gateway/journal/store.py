@@ -44,7 +44,7 @@ def open_to_read(path: Path) -> sqlite3.Connection:
     if not path.exists():
         raise JournalError(f"{path}: there is no journal yet; `brimward run` begins one")
     try:
-        connection = sqlite3.connect(f"file:{path}?mode=ro", uri=True, isolation_level=None)
+        connection = sqlite3.connect(f"{path.absolute().as_uri()}?mode=ro", uri=True, isolation_level=None)
         _check_version(connection)
     except sqlite3.Error as problem:
         raise JournalError(f"{path}: the journal cannot be read: {problem}") from None
@@ -61,8 +61,9 @@ def _prepare(connection: sqlite3.Connection) -> None:
     if found != "ok":
         raise sqlite3.DatabaseError(f"it is damaged: {found}")
     if connection.execute("PRAGMA user_version").fetchone()[0] == 0:
-        connection.executescript(f"BEGIN IMMEDIATE;\n{_SCHEMA}PRAGMA user_version = {VERSION};\nCOMMIT;")
-        connection.executemany("INSERT INTO kind VALUES (?, ?)", enumerate(KINDS))
+        kinds = ", ".join(f"({number}, '{name}')" for number, name in enumerate(KINDS))
+        made = f"{_SCHEMA}INSERT INTO kind VALUES {kinds};\nPRAGMA user_version = {VERSION};\n"  # noqa: S608 - all ours
+        connection.executescript(f"BEGIN IMMEDIATE;\n{made}COMMIT;")
     _check_version(connection)
 
 

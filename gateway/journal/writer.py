@@ -12,6 +12,7 @@ from collections import deque
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
+from gateway.errors import JournalError
 from gateway.events import Message
 from gateway.journal.records import Batch, EffectRow, EventRow, SnapshotRow, flags_of, told
 from gateway.journal.store import KINDS, open_to_write
@@ -44,6 +45,7 @@ class Writer:
         pause_s: float = PAUSE_S,
     ) -> None:
         self.dropped = 0  # inputs that had to be let go
+        self._path = path
         self._connection = open_to_write(path)
         self._committed, self._trouble = committed, trouble
         self._most_waiting, self._pause_s = most_waiting, pause_s
@@ -64,10 +66,15 @@ class Writer:
             self._ready.notify()
 
     def keep_settings(self, digest: str, at: int, texts: dict[str, str]) -> None:
-        """Keep the whole text of the settings, before anything is decided by them. Waits for the disk."""
-        self._connection.execute(
-            "INSERT OR IGNORE INTO settings (digest, at, texts) VALUES (?, ?, ?)", (digest, at, json.dumps(texts))
-        )
+        """Keep the whole text of the settings, before anything is decided by them. Waits for the disk.
+
+        Raises JournalError when they cannot be kept.
+        """
+        query = "INSERT OR IGNORE INTO settings (digest, at, texts) VALUES (?, ?, ?)"
+        try:
+            self._connection.execute(query, (digest, at, json.dumps(texts)))
+        except sqlite3.Error as problem:
+            raise JournalError(f"{self._path}: the settings cannot be kept: {problem}") from None
 
     def close(self, timeout_s: float = 10.0) -> bool:
         """Write what waits and end; return whether all of it is on disk."""
@@ -105,7 +112,7 @@ class Writer:
         """Write all in one transaction; return whether they are on disk."""
         try:
             self._write(batches)
-        except sqlite3.Error as problem:
+        except (sqlite3.Error, ValueError, OverflowError) as problem:  # the disk; or a row that no journal can hold
             self._undo()
             self._failing = True
             self._trouble(f"the journal cannot be written: {problem}")

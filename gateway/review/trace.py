@@ -7,7 +7,7 @@ from pathlib import Path
 from typing import Any, NamedTuple
 
 from gateway.errors import InputError
-from gateway.topics import moment
+from gateway.topics import FIRST_YEAR, LAST_YEAR, moment
 
 LONGEST_LINE = 1_000_000  # characters
 
@@ -41,7 +41,7 @@ def read_trace(path: Path) -> Iterator[TraceLine]:
 
 
 def _lines(path: Path, lines: Iterable[str]) -> Iterator[TraceLine]:
-    before = -1
+    before: int | None = None
     for number, text in enumerate(lines, 1):
         if not text.strip():
             continue
@@ -49,7 +49,7 @@ def _lines(path: Path, lines: Iterable[str]) -> Iterator[TraceLine]:
             line = _line(text)
         except ValueError as problem:
             raise InputError(f"{path}:{number}: {problem}") from None
-        if line.t < before:
+        if before is not None and line.t < before:
             raise InputError(f"{path}:{number}: this is earlier than the line before; a trace is in the order of time")
         before = line.t
         yield line
@@ -82,5 +82,7 @@ def _time(text: str) -> int:
         raise ValueError(f"`{text}` is not a time such as `2026-05-01T10:00:00.000Z`") from None
     if when.tzinfo is None:
         raise ValueError(f"`{text}` does not say in which zone it is; end it with `Z` for UTC")
+    if not FIRST_YEAR <= when.year <= LAST_YEAR:
+        raise ValueError(f"`{text}` is before the year {FIRST_YEAR} or after {LAST_YEAR}")
     whole = when.astimezone(UTC).replace(microsecond=0)
     return int(whole.timestamp()) * 1_000_000_000 + when.microsecond * 1000
