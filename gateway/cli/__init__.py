@@ -3,6 +3,7 @@
 Exit status: 0 done; 1 it ran and the answer is bad; 2 it could not run. Never a traceback for what a user can cause.
 """
 
+import os
 import sys
 
 import typer
@@ -44,6 +45,13 @@ def main() -> None:
     except BrimwardError as error:
         print(error, file=sys.stderr)  # noqa: T201 - this is the command line's own voice
         sys.exit(2)
+    finally:
+        _flush()
+
+
+def _flush() -> None:
+    """Write out what is left; where nobody reads any more, let the interpreter's own try at its end go nowhere."""
+    try:
+        sys.stdout.flush()
     except BrokenPipeError:
-        sys.stderr.close()  # whoever read us has seen enough; the interpreter would complain about it
-        sys.exit(0)
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())

@@ -34,8 +34,9 @@ def named(typed: str, known: Iterable[str], kind: str) -> str:
         return ending[0]
     if ending:
         raise InputError(f"`{typed}` could be {' or '.join(ending)}; type it in full")
-    nearest = difflib.get_close_matches(typed, names, n=1, cutoff=0.4)
-    hint = f"did you mean `{nearest[0]}`?" if nearest else f"known: {', '.join(names) or 'none'}"
+    by_part = {name.partition(".")[2] or name: name for name in names} | {name: name for name in names}
+    nearest = difflib.get_close_matches(typed, by_part, n=1, cutoff=0.5)
+    hint = f"did you mean `{by_part[nearest[0]]}`?" if nearest else f"known: {', '.join(names) or 'none'}"
     raise InputError(f"`{typed}` is no {kind} of this site; {hint}")
 
 

@@ -19,6 +19,8 @@ from gateway.topics import moment
 
 KINDS = ("command", "reason", "rule", "sensor", "note", "gateway", "reading")
 
+MOST = 1_000_000  # rows; more at once is a matter for a program, with --from and --to
+
 journal = typer.Typer(help="The audit trail.", no_args_is_help=True)
 
 
@@ -35,7 +37,7 @@ def list_command(
     tank: Annotated[str | None, typer.Option("--tank", help="Only what is about this tank.")] = None,
     actuator: Annotated[str | None, typer.Option("--actuator", help="Only what is about this actuator.")] = None,
     kind: Annotated[str | None, typer.Option("--kind", help=f"Only this kind: {', '.join(KINDS)}.")] = None,
-    limit: Annotated[int, typer.Option("--limit", help="The newest so many; 0: all.", min=0)] = 100,
+    limit: Annotated[int, typer.Option("--limit", help="The newest so many; 0: all.", min=0, max=MOST)] = 100,
     as_json: AsJson = False,
 ) -> None:
     """List what has happened, the newest last; readings only when asked for with --kind reading.
@@ -45,7 +47,9 @@ def list_command(
     settings = load(site)
     plant = Plant(plant_plan(settings))
     zone = settings.file.timezone
-    span = Span(read_time(begin, zone) if begin else 0, read_end(end, zone) if end else Span().end)
+    span = Span(
+        read_time(begin, zone) if begin is not None else 0, read_end(end, zone) if end is not None else Span().end
+    )
     if kind is not None and kind not in KINDS:
         raise InputError(f"`{kind}` is no kind; known: {', '.join(KINDS)}")
     about = named(actuator, plant.plan.commands, "actuator") if actuator else None

@@ -31,7 +31,7 @@ def record_command(
     """
     settings = load(site)
     topics = Plant(plant_plan(settings)).topics
-    until = time.monotonic() + (read_span(duration) if duration else float("inf"))
+    until = time.monotonic() + (read_span(duration) if duration is not None else float("inf"))
     tap = Tap(link_options(settings, topics), topics)
     try:
         with output.open("w", encoding="utf-8") as file:

@@ -32,10 +32,12 @@ def why_command(
     settings = load(site)
     zone = settings.file.timezone
     reader = reader_of(settings)
-    when = read_end(at, zone) if at else Span().end
-    found = recall_at(reader, settings, when) if at else recall(reader, settings)
+    when = read_end(at, zone) if at is not None else Span().end
+    found = recall_at(reader, settings, when) if at is not None else recall(reader, settings)
     if found is None:
-        raise InputError("the journal does not reach back to that time" if at else "nothing has happened yet")
+        raise InputError(
+            "the journal does not reach back to that time" if at is not None else "nothing has happened yet"
+        )
     plant, _ = found
     full, is_actuator = _meant(plant, name)
     told = why_actuator(reader, plant, full, when) if is_actuator else why_rule(reader, plant, full, when)
