@@ -10,6 +10,7 @@ from dataclasses import dataclass, replace
 from typing import Protocol, assert_never
 
 from rules.conditions import later
+from rules.conditions.compile import constant
 from rules.conditions.errors import ConditionError
 from rules.conditions.tree import (
     And,
@@ -75,9 +76,7 @@ class _Checker:
                 left, right = self.alike(node.left, node.right)
                 return replace(node, left=left, right=right)
             case Between():
-                term, low = self.alike(node.term, node.low)
-                _, high = self.alike(node.term, node.high)
-                return replace(node, term=term, low=low, high=high)
+                return self.between(node)
             case Is():
                 return self.word(node)
             case Commanded():
@@ -252,6 +251,15 @@ class _Checker:
                 return self.dimension(term.term)
             case _:
                 return Dimension.NUMBER
+
+    def between(self, node: Between) -> Between:
+        term, low = self.alike(node.term, node.low)
+        _, high = self.alike(node.term, node.high)
+        least, most = constant(low), constant(high)
+        if least is not None and most is not None and least > most:
+            message = f"`{node.low}` is more than `{node.high}`, so this is never true; the lower one comes first"
+            raise ConditionError(message, _column(node.low), found=str(node.low))
+        return replace(node, term=term, low=low, high=high)
 
     def duration(self, term: Literal) -> Literal:
         quantity = self.literal(term)

@@ -129,6 +129,12 @@ IN_A_TANK = [
     ("level above 1.5 m", "(level above 1 m^", "the end cannot stand here; expected ')'"),
     ("level above 1.5 m", "level above ^1.5", "`1.5` needs a unit: `sump.level` is a length, held in m"),
     ("level above 1.5 m", "^level is wet", "`level` is a quantity; compare it, as in `level above …`"),
+    (
+        "level above 1.5 m",
+        "level between ^1.5 m and 1 m",
+        "`1.5 m` is more than `1 m`, so this is never true; the lower",
+    ),
+    ("level above 1.5 m", "level between ^brim and suction", "so this is never true; the lower one comes first"),
     ("level above 1.5 m", "^float is damp", "`float` can be wet, dry, never `damp`"),
     ("level above 1.5 m", "^float above 1 m", "`float` is a contact; ask `float is …` with one of wet, dry"),
     ("level above 1.5 m", "^float commanded on", "`float` is no actuator, so nothing commands it"),
