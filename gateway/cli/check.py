@@ -41,7 +41,8 @@ def check_command(
 def _summarise(name: str, plan: PlantPlan, *, verbose: bool) -> None:
     site = plan.site
     tanks = len({decl.name.partition(".")[0] for decl in site.signals if "." in decl.name})
-    counts = f"{tanks} tanks, {len(plan.sensors)} sensors, {len(site.actuators)} actuators, {len(site.rules)} rules"
+    things = {"tank": tanks, "sensor": len(plan.sensors), "actuator": len(site.actuators), "rule": len(site.rules)}
+    counts = ", ".join(f"{count} {thing}{'' if count == 1 else 's'}" for thing, count in things.items())
     typer.echo(f"{name}: {counts}; all of it can be used")
     for rule in site.rules if verbose else ():
         typer.echo(_told(rule))
