@@ -1,0 +1,64 @@
+"""What the tests of conditions share: signals with short names, sentences over them, and a board to set."""
+
+from collections.abc import Iterable
+
+from rules.conditions.check import Meaning, check
+from rules.conditions.compile import Board, Compiled, compile_condition
+from rules.conditions.parse import parse
+from rules.conditions.tree import SECOND, Condition
+from rules.model import Fault, Signal, SignalDecl
+from rules.quantity import Dimension, Quantity
+from rules.truth import FALSE, TRUE
+
+CONTACTS = ("a", "b", "c")
+SIGNALS = (
+    *(SignalDecl(name=name, words=("yes", "no")) for name in CONTACTS),
+    SignalDecl(name="x", dimension=Dimension.LENGTH),
+)
+
+
+class Scope:
+    """The signals above, each by its own name."""
+
+    def resolve(self, name: str) -> Meaning | None:
+        """Return the signal."""
+        return next((decl for decl in SIGNALS if decl.name == name), None)
+
+    def known(self) -> Iterable[str]:
+        """Return the names."""
+        return (decl.name for decl in SIGNALS)
+
+    def full_scale(self, name: str) -> Quantity | None:
+        """Return nothing: there is no brim."""
+        del name
+        return None
+
+
+def read(text: str) -> Quantity:
+    """Return a value in metres, seconds or as a plain number."""
+    number, _, unit = text.partition(" ")
+    return Quantity(float(number), {"m": Dimension.LENGTH, "s": Dimension.TIME}.get(unit, Dimension.NUMBER))
+
+
+def sentence(text: str) -> Condition:
+    """Return a checked condition."""
+    return check(parse(text), Scope(), read)
+
+
+class Trial:
+    """One condition on a board of its own, from the start at 0 on."""
+
+    def __init__(self, text: str) -> None:
+        self.board = Board(SIGNALS, ())
+        self.compiled: Compiled = compile_condition(sentence(text), self.board)
+        self.compiled.begin(0)
+
+    def put(self, name: str, truth: int | None = None, *, value: float | None = None) -> None:
+        """Let a contact be yes, no or unknown; or the quantity be a value."""
+        words: dict[int, str] = {TRUE: "yes", FALSE: "no"}
+        word: float | str | None = words.get(truth) if truth is not None else value
+        self.board.put(self.board.slot[name], Signal(word, Fault.NONE if word is not None else Fault.SILENT))
+
+    def at(self, seconds: float) -> int:
+        """Return the truth at a time."""
+        return self.compiled.evaluate(round(seconds * SECOND))
