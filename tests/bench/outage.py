@@ -1,7 +1,8 @@
 """How late the core's timers are while the broker is away: stopped, frozen, swallowed, mute.
 
-The gateway runs in this process. Twice a second a deadline of a rule passes, and the lateness of what follows is taken:
-from the deadline to the moment at which its effect is there. Prints the worst of each kind, and of quiet running, in ms.
+The gateway runs in this process. Twice a second a deadline of a rule passes, and the lateness of what follows is
+taken: from the deadline to the moment at which its effect is there. Prints the worst of each kind, and of quiet
+running, in ms.
 Run: `python tests/bench/outage.py [SECONDS]`.
 """
 
