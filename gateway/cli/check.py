@@ -10,6 +10,7 @@ from gateway.settings.advice import advise
 from gateway.settings.assemble import plant_plan
 from gateway.settings.complaint import SettingsError
 from gateway.settings.load import load
+from gateway.settings.models import Site
 from rules.model import RuleDecl
 
 
@@ -31,19 +32,23 @@ def check_command(
         raise typer.Exit(1) from None
     plan = plant_plan(settings)
     risks = advise(settings, plan)
-    _summarise(settings.name, plan, verbose=verbose)
+    _summarise(settings, plan, verbose=verbose)
     for risk in risks:
         typer.echo(f"risky: {risk}")
     if strict and risks:
         raise typer.Exit(1)
 
 
-def _summarise(name: str, plan: PlantPlan, *, verbose: bool) -> None:
+def _summarise(settings: Site, plan: PlantPlan, *, verbose: bool) -> None:
     site = plan.site
-    tanks = len({decl.name.partition(".")[0] for decl in site.signals if "." in decl.name})
-    things = {"tank": tanks, "sensor": len(plan.sensors), "actuator": len(site.actuators), "rule": len(site.rules)}
+    things = {
+        "tank": len(settings.tanks),
+        "sensor": len(plan.sensors),
+        "actuator": len(site.actuators),
+        "rule": len(site.rules),
+    }
     counts = ", ".join(f"{count} {thing}{'' if count == 1 else 's'}" for thing, count in things.items())
-    typer.echo(f"{name}: {counts}; all of it can be used")
+    typer.echo(f"{settings.name}: {counts}; all of it can be used")
     for rule in site.rules if verbose else ():
         typer.echo(_told(rule))
 

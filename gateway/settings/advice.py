@@ -5,6 +5,7 @@ from collections.abc import Iterator
 from gateway.plan import PlantPlan
 from gateway.settings.models import Site
 from gateway.settings.names import full, parts
+from gateway.settings.units import SECOND
 from rules.conditions.compile import constant
 from rules.conditions.tree import And, AtLeast, Comparison, Condition, Held, Name, Not, Or, Relation
 from rules.model import OnUnknown, Rank, RuleDecl
@@ -12,7 +13,7 @@ from rules.model import OnUnknown, Rank, RuleDecl
 
 def advise(site: Site, plan: PlantPlan) -> list[str]:
     """Return what is risky, in file order."""
-    return [*_about_broker(site), *_about_actuators(site, plan), *_about_rules(site, plan)]
+    return [*_about_broker(site), *_about_sensors(site), *_about_actuators(site, plan), *_about_rules(site, plan)]
 
 
 def _about_broker(site: Site) -> Iterator[str]:
@@ -25,6 +26,15 @@ def _about_broker(site: Site) -> Iterator[str]:
         yield f"broker {address.host}: no user name and no certificate; anyone on the network can be the gateway"
     if address.transport == "embedded":
         yield "the embedded broker is for trials: it keeps nothing, and devices must find its port"
+
+
+def _about_sensors(site: Site) -> Iterator[str]:
+    for tank, part in parts(site):
+        for name, sensor in part.sensors.items():
+            silent, every = sensor.silent_after, sensor.expect_every
+            if silent is not None and every is not None and silent <= every:
+                told = f"counts as silent after {silent / SECOND:g} s, though it sends every {every / SECOND:g} s"
+                yield f"{full(tank, name)}: {told}; it is unknown between readings"
 
 
 def _about_actuators(site: Site, plan: PlantPlan) -> Iterator[str]:

@@ -121,8 +121,8 @@ def choice_of(text: str) -> OnUnknown | Rhythm:
     act_for, every = (read(part) for part in found.groups())
     if act_for.dimension is not Dimension.TIME or every.dimension is not Dimension.TIME:
         raise ValueError(f"`{text}`: expected two times, such as `act for 3 min every 20 min`")
-    if not 0 < act_for.value < every.value:
-        raise ValueError(f"`{text}`: the first time is shorter than the second, and neither is nothing")
+    if not 1 <= act_for.value < every.value:
+        raise ValueError(f"`{text}`: the first time is shorter than the second, and at least `1 s`")
     return Rhythm(act_for=round(act_for.value * SECOND), every=round(every.value * SECOND))
 
 

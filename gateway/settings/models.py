@@ -27,7 +27,8 @@ from gateway.settings.fields import (
     Word,
     Zone,
 )
-from gateway.settings.units import SECOND
+from gateway.settings.units import SECOND, read_as
+from rules.quantity import Dimension
 
 
 def _known(kind: str, table: dict[str, bool]) -> BeforeValidator:
@@ -71,13 +72,13 @@ def _address(value: object) -> Address:
     text = str(value)
     if text == "embedded":
         return Address(transport="embedded")
+    if "@" in text and not text.startswith("unix:///"):  # a secret may stand before it: the text is not repeated
+        raise ValueError("user name and password have keys of their own: `username`, `password`")
     try:
         parts = urlsplit(text)
         port = parts.port
     except ValueError:
         raise ValueError(f"`{text}` is not a broker's address") from None
-    if parts.username or parts.password:
-        raise ValueError("user name and password have keys of their own: `username`, `password`")
     whole = not parts.query and not parts.fragment and port != 0
     if whole and parts.scheme == "unix" and parts.path and not parts.netloc:
         return Address(transport="unix", host=parts.path)
@@ -189,6 +190,12 @@ class Sensor(Part):
     range: list[AnyQuantity] | None = None
 
 
+def _expiry(value: object) -> object:
+    if read_as(value, Dimension.TIME).value < 1:  # brokers count whole seconds
+        raise ValueError(f"`{value}` is too short for a command to arrive; expected `1 s` or more")
+    return value
+
+
 class Command(Part):
     """The message that puts an actuator into a state."""
 
@@ -198,7 +205,7 @@ class Command(Part):
     payloads: Payloads | None = None
     qos: Literal[0, 1] = 1
     retain: bool = False
-    expiry: Duration = 10 * SECOND
+    expiry: Annotated[Duration, BeforeValidator(_expiry)] = 10 * SECOND
 
 
 class Actuator(Part):

@@ -13,6 +13,7 @@ import pint
 from rules.quantity import Dimension, Quantity
 
 SECOND = 1_000_000_000
+LONGEST = 36_525 * 86_400  # s, 100 years: from now on, it stays within the 63 bits in which instants are kept
 
 _VALUE = re.compile(r"\s*([-+]?[0-9]+(?:\.[0-9]+)?(?:[eE][-+]?[0-9]+)?)\s*(\S*)\s*", re.ASCII)
 _UNIT = re.compile(r"[A-Za-zµμΩ°][A-Za-z0-9µμΩ°/*^]{0,20}")
@@ -68,6 +69,8 @@ def read(text: str) -> Quantity:
     value = _times(number, factor)
     if not math.isfinite(value):
         raise ValueError(f"`{text}` is too large")
+    if dimension is Dimension.TIME and abs(value) > LONGEST:
+        raise ValueError(f"`{text}` is longer than 100 years")
     return Quantity(value, dimension)
 
 

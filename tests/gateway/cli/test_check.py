@@ -58,6 +58,11 @@ RISKS = [
         "topic: shed/rain-tank/inlet, retain: true}",
         "reaches a device that comes back days",
     ),
+    (
+        "    expect_every: 10 s\n",
+        "    expect_every: 10 s\n    silent_after: 2 s\n",
+        "rain-tank.head: counts as silent after 2 s, though it sends every 10 s",
+    ),
     ("    until: level above 80 %\n", "", "'rain-tank.fill': no `until`, so no dead band"),
     ("if_unknown: act", "if_unknown: release", "a trip that releases when it cannot be decided protects nothing"),
     ("level above brim - 10 cm", "level above brim + 5 cm", "is 0.05 m above the brim; it comes after the spill"),
@@ -84,6 +89,13 @@ def test_an_actuator_that_no_rule_moves_is_told(tmp_path: Path) -> None:
     text = tank.read_text("utf-8").replace("rules:\n", "  lamp: {command: {topic: shed/lamp}}\n\nrules:\n")
     tank.write_text(text, "utf-8")
     assert "risky: rain-tank.lamp: no rule asks anything of it" in run("check", site).out
+
+
+def test_a_tank_without_sensors_counts_as_a_tank(tmp_path: Path) -> None:
+    """What is counted are the tanks that were written."""
+    site = copy_of("first-tank", tmp_path)
+    (site / "tanks" / "vat.yaml").write_text("tank: vat\n", "utf-8")
+    assert run("check", site).out.startswith("first-tank: 2 tanks, 1 sensor, 1 actuator, 2 rules;")
 
 
 def test_a_folder_that_cannot_be_read_is_status_2(tmp_path: Path) -> None:
