@@ -294,13 +294,19 @@ class Engine:
         return {reader for actuator in actuators for reader in self._readers[actuator.slot]}
 
     def _stop_chase(self, t: int, pending: set[int], effects: list[Effect]) -> None:
-        """Rules that move each other's actuators without end are a fault of the settings: put those to safe."""
+        """Rules that move each other's actuators without end are a fault of the settings: put those to safe.
+
+        A trip or an interlock that is in force at the end still has its way.
+        """
         names = ", ".join(f"'{self._rules[index].decl.name}'" for index in sorted(pending))
         reason = f"rules chase each other: {names}"
         effects.append(Noted(t, "gateway", reason))
         for index in sorted({self._actuator_of[index] for index in pending}):
             actuator = self._actuators[index]
-            actuator.decided = Decision(actuator.decl.safe, Rank.SAFE, None, f"{reason}, so it is put to safe")
+            decision = arbitrate(actuator.decl, actuator.rules, Fallback.SAFE)
+            if decision.rank not in {Rank.TRIP, Rank.INTERLOCK}:
+                decision = Decision(actuator.decl.safe, Rank.SAFE, None, f"{reason}, so it is put to safe")
+            actuator.decided = decision
             self._send(t, actuator, effects, renew=False)
 
     # ---- for people, and for the journal --------------------------------------------------------------------------

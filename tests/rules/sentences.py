@@ -6,7 +6,7 @@ from rules.conditions.check import Meaning, check
 from rules.conditions.compile import Board, Compiled, compile_condition
 from rules.conditions.parse import parse
 from rules.conditions.tree import SECOND, Condition
-from rules.model import Fault, Signal, SignalDecl
+from rules.model import ActuatorDecl, Fault, Signal, SignalDecl
 from rules.quantity import Dimension, Quantity
 from rules.truth import FALSE, TRUE
 
@@ -18,15 +18,18 @@ SIGNALS = (
 
 
 class Scope:
-    """The signals above, each by its own name."""
+    """Declared signals and actuators, each by its own name."""
+
+    def __init__(self, declared: Iterable[SignalDecl | ActuatorDecl] = SIGNALS) -> None:
+        self._declared = {decl.name: decl for decl in declared}
 
     def resolve(self, name: str) -> Meaning | None:
-        """Return the signal."""
-        return next((decl for decl in SIGNALS if decl.name == name), None)
+        """Return what was declared under the name."""
+        return self._declared.get(name)
 
     def known(self) -> Iterable[str]:
         """Return the names."""
-        return (decl.name for decl in SIGNALS)
+        return self._declared
 
     def full_scale(self, name: str) -> Quantity | None:
         """Return nothing: there is no brim."""
@@ -40,9 +43,9 @@ def read(text: str) -> Quantity:
     return Quantity(float(number), {"m": Dimension.LENGTH, "s": Dimension.TIME}.get(unit, Dimension.NUMBER))
 
 
-def sentence(text: str) -> Condition:
+def sentence(text: str, declared: Iterable[SignalDecl | ActuatorDecl] = SIGNALS) -> Condition:
     """Return a checked condition."""
-    return check(parse(text), Scope(), read)
+    return check(parse(text), Scope(declared), read)
 
 
 class Trial:
