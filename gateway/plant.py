@@ -129,10 +129,7 @@ class Plant:
         """
         changed: list[int] = []
         for index in self._heard.get(event.topic, ()):
-            sensor = self.sensors[index]
-            if event.late and not sensor.on_change:
-                continue
-            if sensor.take(t, event.topic, event.payload, retained=event.retained or event.late):
+            if self.sensors[index].take(t, event.topic, event.payload, retained=event.retained or event.late):
                 changed.append(index)
             self._queue(index)
         if changed:

@@ -115,7 +115,7 @@ class _Watch:
     def __init__(self, compiled: Compiled) -> None:
         self.compiled = compiled
         self.since: int | None = None  # unknown since
-        self.decided_by: int | None = None  # when tolerated unknown becomes undecided
+        self.decided_by: int | None = None  # when tolerated unknown becomes undecided; each look works it out anew
 
     def look(self, t: int, tolerance: int, grace_until: int) -> Side:
         """Return what is known of the condition at `t`."""
@@ -230,7 +230,7 @@ class Rule:
             "met": self.met,
             "sides": [int(self.from_side), int(self.until_side)],
             "deadline": self.deadline,
-            "watches": [[watch.since, watch.decided_by, watch.compiled.save()] for watch in self._watches()],
+            "watches": [[watch.since, watch.compiled.save()] for watch in self._watches()],
         }
 
     def restore(self, saved: dict[str, Any]) -> None:
@@ -238,8 +238,8 @@ class Rule:
         self.in_force, self.latched, self.met = saved["in_force"], saved["latched"], saved["met"]
         self.from_side, self.until_side = (Side(side) for side in saved["sides"])
         self.deadline = saved["deadline"]
-        for watch, (since, decided_by, compiled) in zip(self._watches(), saved["watches"], strict=True):
-            watch.since, watch.decided_by = since, decided_by
+        for watch, (since, compiled) in zip(self._watches(), saved["watches"], strict=True):
+            watch.since = since
             watch.compiled.restore(compiled)
 
     def _watches(self) -> list[_Watch]:

@@ -141,6 +141,24 @@ def test_in_grace_the_actuator_is_left_as_found_until_its_rule_is_known() -> Non
     assert drum.commands() == [(5.0, "on")]
 
 
+def test_nothing_moves_away_from_safe_before_every_protective_rule_has_been_decided() -> None:
+    """What an auto rule knows is not enough while a trip or an interlock of its actuator still knows nothing."""
+    wanted = rule("drum.cool", "float is wet", rank=Rank.AUTO, state="on")
+    drum = Drum(wanted, OVERFLOW, grace=60)
+    drum.do(Signals(5 * SECOND, ((1, Signal("wet", Fault.NONE)),)))
+    assert drum.commands() == []
+    drum.level(6, 1.0)
+    assert drum.commands() == [(6.0, "on")]
+
+
+def test_a_move_to_safe_waits_for_no_other_rule() -> None:
+    """An auto rule that asks for the safe state is obeyed while a trip still knows nothing."""
+    wanted = rule("drum.rest", "float is wet", rank=Rank.AUTO, state="off")
+    drum = Drum(wanted, OVERFLOW, grace=60)
+    drum.do(Signals(5 * SECOND, ((1, Signal("wet", Fault.NONE)),)))
+    assert drum.commands() == [(5.0, "off")]
+
+
 def test_after_grace_an_undecided_rule_makes_its_actuator_safe() -> None:
     """At the exact end of the grace."""
     drum = Drum(OVERFLOW, grace=60)
@@ -231,3 +249,69 @@ def test_a_saved_engine_goes_on_as_if_it_had_never_stopped(at: int) -> None:
         metres = (t * 37 % 11) / 5
         assert whole.level(t, metres) == copy.level(t, metres)
         assert whole.engine.wake_at == copy.engine.wake_at
+
+
+def test_of_two_interlocks_that_differ_the_preferred_state_wins_whatever_their_order() -> None:
+    """`prefer` decides among protective rules; the loser is told."""
+    on = rule("drum.keep", "float is wet", rank=Rank.INTERLOCK, state="on")
+    off = rule("drum.guard", "float is wet", rank=Rank.INTERLOCK, state="off")
+    for rules in ((on, off), (off, on)):
+        drum = Drum(*rules)
+        drum.do(Signals(SECOND, ((1, Signal("wet", Fault.NONE)),)))
+        told = drum.engine.explain("drum.cooler")
+        assert (told["state"], told["rule"], told["overruled"]) == ("off", "drum.guard", ["drum.keep"])
+
+
+def test_once_commanded_an_actuator_is_safe_and_not_as_found_while_a_rule_is_undecided() -> None:
+    """A trip stopped it after the start; when the trip leaves, an auto rule that knows nothing does not free it."""
+    wanted = rule("drum.cool", "float is wet", rank=Rank.AUTO, state="on")
+    drum = Drum(wanted, OVERFLOW, grace=60)
+    drum.level(1, 1.9)
+    drum.wait(9)
+    assert drum.commands() == [(9.0, "off")]
+    drum.level(30, 1.0)
+    told = drum.engine.explain("drum.cooler")
+    assert (told["state"], told["rank"]) == ("off", "safe")
+    assert "'drum.cool' is not decided yet, so it is put to safe" in told["reason"]
+
+
+def test_after_a_long_outage_what_is_still_unknown_decides_so_after_the_grace() -> None:
+    """Twenty seconds after the link is proven again the auto rule's own word counts: it asks for nothing."""
+    wanted = rule("drum.cool", "float is wet", rank=Rank.AUTO, state="off", if_unknown=OnUnknown.RELEASE)
+    held = rule("drum.keep", "level below 0.5 m", rank=Rank.AUTO, state="on", if_unknown=OnUnknown.ACT)
+    drum = Drum(held, wanted, grace=20)
+    drum.do(LinkLost(30 * SECOND))
+    drum.wait(61)
+    drum.do(LinkProven(100 * SECOND))
+    assert drum.commands()[-1] == (100.0, "off")
+    drum.wait(119)
+    assert drum.commands()[-1] == (100.0, "off")
+    drum.wait(121)
+    assert drum.commands()[-1] == (120.0, "on")
+
+
+def test_a_time_of_unknown_goes_on_over_a_restart() -> None:
+    """Ten seconds before it and twenty after make the thirty that are tolerated; the time between lives is not known."""
+    guard = rule("drum.guard", "level above 1.8 m", if_unknown=OnUnknown.ACT, unknown_for=30 * SECOND)
+    drum = Drum(guard)
+    drum.level(1, 1.0)
+    drum.level(10, None)
+    drum.wait(20)
+    drum.effects += drum.engine.step(Started(1000 * SECOND))
+    drum.effects += drum.engine.step(LinkProven(1000 * SECOND))
+    drum.wait(1060)
+    changed = [e for e in drum.effects if isinstance(e, RuleChanged)]
+    assert [(round(e.t / SECOND), e.in_force, e.from_) for e in changed] == [(1020, True, "undecided")]
+
+
+def test_unknown_that_is_still_tolerated_does_not_free_an_actuator_after_a_long_outage() -> None:
+    """Only knowledge does, or the end of the grace."""
+    drum = Drum(rule("drum.overflow", "level above 1.8 m", "level below 1.5 m", unknown_for=300 * SECOND), grace=20)
+    drum.level(1, 1.0)
+    drum.do(LinkLost(5 * SECOND))
+    drum.wait(36)
+    drum.level(36, None)
+    drum.do(LinkProven(50 * SECOND))
+    assert drum.commands()[-1] == (50.0, "off")
+    drum.wait(69)
+    assert drum.commands()[-1] == (50.0, "off")
