@@ -291,7 +291,7 @@ def test_after_a_long_outage_what_is_still_unknown_decides_so_after_the_grace() 
 
 
 def test_a_time_of_unknown_goes_on_over_a_restart() -> None:
-    """Ten seconds before it and twenty after make the thirty that are tolerated; the time between lives is not known."""
+    """Ten seconds before it and twenty after make the thirty that are tolerated."""
     guard = rule("drum.guard", "level above 1.8 m", if_unknown=OnUnknown.ACT, unknown_for=30 * SECOND)
     drum = Drum(guard)
     drum.level(1, 1.0)
