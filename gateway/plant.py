@@ -16,6 +16,7 @@ from gateway.measure.sensor import Sensor
 from gateway.measure.status import Status
 from gateway.plan import PlantPlan, TankPlan
 from rules import effects as core
+from rules.effects import netted
 from rules.engine import Engine
 from rules.events import Event as CoreEvent
 from rules.events import LinkLost, LinkProven, Passed, Signals, Started
@@ -85,7 +86,7 @@ class Plant:
             self._take(event, t, effects)
         else:
             self._happen(event, t, effects)
-        return _netted(effects) if len(effects) > 1 else effects
+        return netted(effects, Command)
 
     @property
     def wake_at(self) -> int | None:
@@ -338,11 +339,3 @@ class Plant:
         self._due, self._queued = [], [None] * len(self.sensors)
         for index in range(len(self.sensors)):
             self._queue(index)
-
-
-def _netted(effects: list[Effect]) -> list[Effect]:
-    """Return the effects with at most one command per actuator, the last."""
-    last = {effect.actuator: index for index, effect in enumerate(effects) if isinstance(effect, Command)}
-    if not last:
-        return effects
-    return [e for index, e in enumerate(effects) if not isinstance(e, Command) or last[e.actuator] == index]

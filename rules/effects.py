@@ -4,7 +4,7 @@ Each effect carries the time `t` at which it took effect, in nanoseconds on the 
 journaled and explained by itself.
 """
 
-from typing import Any, NamedTuple
+from typing import Any, NamedTuple, Protocol, TypeVar
 
 from rules.model import Rank
 
@@ -63,3 +63,27 @@ class Noted(NamedTuple):
 
 
 Effect = RuleChanged | Commanded | ReasonChanged | Noted
+
+
+class _Command(Protocol):
+    @property
+    def actuator(self) -> str: ...
+    @property
+    def again(self) -> bool: ...
+
+
+E = TypeVar("E")
+
+
+def netted(effects: list[E], command: type[_Command]) -> list[E]:
+    """Return the effects of one step with at most one command per actuator: the last change, else one renewal.
+
+    A renewal tells the state that the change before it has brought, so nothing is lost with it.
+    """
+    if len(effects) < 2:
+        return effects
+    kept: dict[str, int] = {}
+    for index, effect in enumerate(effects):
+        if isinstance(effect, command) and not (effect.again and effect.actuator in kept):
+            kept[effect.actuator] = index
+    return [e for index, e in enumerate(effects) if not isinstance(e, command) or kept[e.actuator] == index]

@@ -15,7 +15,7 @@ from typing import Any, assert_never
 from rules.arbitration import Decision, Fallback, arbitrate
 from rules.conditions.compile import DIGITS, Board
 from rules.conditions.tree import SECOND
-from rules.effects import Commanded, Effect, Noted, ReasonChanged, RuleChanged
+from rules.effects import Commanded, Effect, Noted, ReasonChanged, RuleChanged, netted
 from rules.events import Event, LinkLost, LinkProven, Passed, Signals, Started
 from rules.grace import Grace
 from rules.model import ActuatorDecl, Fault, Rank, Signal, SiteDecl
@@ -106,7 +106,7 @@ class Engine:
             case _:
                 assert_never(event)
         self.now = t
-        return _netted(effects)
+        return netted(effects, Commanded)
 
     @property
     def wake_at(self) -> int | None:
@@ -400,11 +400,3 @@ def _told(now: int, rule: Rule) -> dict[str, Any]:
         "until": rule.until_side.word,
         "because": rule.explain(now),
     }
-
-
-def _netted(effects: list[Effect]) -> list[Effect]:
-    """Return the effects with at most one command per actuator, the last."""
-    if len(effects) < 2:
-        return effects
-    last = {effect.actuator: index for index, effect in enumerate(effects) if isinstance(effect, Commanded)}
-    return [e for index, e in enumerate(effects) if not isinstance(e, Commanded) or last[e.actuator] == index]

@@ -3,8 +3,14 @@
 from collections.abc import Iterator
 
 import pytest
+from hypothesis import settings
 
 from gateway.testing import Mosquitto, mosquitto_here
+
+# The same examples every time, and no example is judged by how long it took. `--hypothesis-profile=search` seeks anew.
+settings.register_profile("steady", derandomize=True, deadline=None)
+settings.register_profile("search", max_examples=2_000, deadline=None)
+settings.load_profile("steady")
 
 
 def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:

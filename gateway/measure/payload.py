@@ -1,8 +1,8 @@
 """From the bytes of a message to one number or one word, or to the reason why not. Total: any bytes end in either.
 
 A plain number is text; inside JSON it is found by a pointer (RFC 6901). Nothing is guessed: a string where a number
-belongs, NaN, an infinity, a number too large, are refused. What a reason quotes of a payload is short and printable,
-since it ends on terminals and in the journal.
+belongs, NaN, an infinity, a number too large, a name that stands twice, are refused. What a reason quotes of a payload
+is short and printable, since it ends on terminals and in the journal.
 """
 
 import json
@@ -127,7 +127,17 @@ def _refuse_constant(name: str) -> NoReturn:
     raise PayloadError(f"{name} is no number")
 
 
-_decode = json.JSONDecoder(parse_constant=_refuse_constant).decode
+def _object(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    """Return an object; refuse one with a name twice, as readers differ in which they take (RFC 7493, 2.3)."""
+    found = dict(pairs)
+    if len(found) < len(pairs):
+        names = [name for name, _ in pairs]
+        twice = next(name for name in names if names.count(name) > 1)
+        raise PayloadError(f"'{shown(twice)}' stands in it twice")
+    return found
+
+
+_decode = json.JSONDecoder(object_pairs_hook=_object, parse_constant=_refuse_constant).decode
 
 
 def _document(payload: bytes) -> Any:

@@ -53,6 +53,8 @@ def test_what_is_no_plain_number_is_refused_with_the_reason(payload: bytes, reas
         (b"{", "not JSON"),
         (b'{"hz": NaN}', "NaN is no number"),
         (b'{"hz": -Infinity}', "-Infinity is no number"),
+        (b'{"hz": 9000, "hz": 2600}', "'hz' stands in it twice"),
+        (b'{"other": [{"a": 1, "a": 1}], "hz": 9000}', "'a' stands in it twice"),
         (b'{"hz": 1e999}', "too large"),
         (b'{"hz": ' + b"9" * 400 + b"}", "too large"),
         (b'{"hz": ' + b"9" * 5_000 + b"}", "not JSON|too large"),

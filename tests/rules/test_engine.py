@@ -315,3 +315,12 @@ def test_unknown_that_is_still_tolerated_does_not_free_an_actuator_after_a_long_
     assert drum.commands()[-1] == (50.0, "off")
     drum.wait(69)
     assert drum.commands()[-1] == (50.0, "off")
+
+
+def test_a_change_that_falls_due_in_the_step_that_tells_all_states_again_is_told_as_a_change() -> None:
+    """The renewal adds nothing to it, and must not hide it."""
+    drum = Drum(OVERFLOW)
+    drum.level(1, 1.0)
+    drum.level(2, 1.9)
+    told = [e for e in drum.do(LinkProven(11 * SECOND)) if isinstance(e, Commanded)]
+    assert [(e.t / SECOND, e.state, e.again) for e in told] == [(10.0, "off", False)]
