@@ -1,6 +1,9 @@
 """`brimward replay`: a trace through the site's rules in virtual time, with the commands at their exact times."""
 
 import json
+import shutil
+import subprocess
+import sys
 from pathlib import Path
 from typing import Any
 
@@ -133,6 +136,44 @@ def test_blank_lines_other_zones_and_foreign_topics_are_no_trouble(tmp_path: Pat
 def test_an_empty_trace_does_nothing(tmp_path: Path) -> None:
     """There is no time at which anything could start."""
     assert replayed(trace(tmp_path / "t.jsonl")) == []
+
+
+STORMY = [
+    ("dairy/condensate-drum/probe", ['{"hz": 9000}', '{"hz": 2600}', "rubbish"]),
+    ("dairy/condensate-drum/float", ["0", "1", "0"]),
+    ("dairy/wash-sump/ma", ['{"current": {"ma": 19}}', '{"current": {"ma": 5}}', "{}"]),
+    ("dairy/wash-sump/float", ["0", "1", "0"]),
+    ("dairy/wash-sump/alive", ["1", "1", "0"]),
+    ("dairy/header-tank/pf", ["300", "2300", "1500"]),
+    ("dairy/cistern/mm", ["600", "1900", "1000"]),
+]
+
+
+@pytest.mark.parametrize("turned", [False, True])
+@pytest.mark.parametrize("seed", ["1", "2", "77"])
+def test_invariant_24_a_replay_is_equal_to_the_byte_whatever_the_hashes_and_the_files_order(
+    seed: str, tmp_path: Path, *, turned: bool
+) -> None:
+    """The order in which the tanks' files were made, or the hashes of a process, move nothing."""
+    path = tmp_path / "storm.jsonl"
+    with path.open("w", encoding="utf-8") as file:
+        for second in range(0, 600, 3):
+            for topic, payloads in STORMY:
+                at = f"2026-05-01T10:{second // 60:02}:{second % 60:02}Z"
+                said = {"at": at, "topic": topic, "payload": payloads[second // 60 % 3]}
+                file.write(json.dumps(said) + "\n")
+    given = example("hill-dairy")
+    site = tmp_path / "site"
+    (site / "tanks").mkdir(parents=True)
+    for source in sorted(given.rglob("*.yaml"), reverse=turned):
+        shutil.copyfile(source, site / source.relative_to(given))
+    command = [sys.executable, "-c", "from gateway.cli import main; main()", "replay", site, "--messages", path]
+    told = [
+        subprocess.run([*command, "--values"], env={"PYTHONHASHSEED": seed}, capture_output=True, check=True).stdout,
+        run("replay", given, "--messages", path, "--values").out.encode(),
+    ]
+    assert told[0] == told[1]
+    assert told[0].count(b'"command"') > 10
 
 
 GOOD = '{"at": "2026-05-01T10:00:00Z", "topic": "a", "payload": "1"}\n'
