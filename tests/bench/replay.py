@@ -48,7 +48,13 @@ def main() -> None:
     with tempfile.TemporaryDirectory() as folder:
         trace = Path(folder) / "day.jsonl"
         messages = write_trace(trace, seconds)
-        command = [sys.executable, "-c", "from gateway.cli import main; main()", "replay", example("hill-dairy")]
+        command: list[str | Path] = [
+            sys.executable,
+            "-c",
+            "from gateway.cli import main; main()",
+            "replay",
+            example("hill-dairy"),
+        ]
         began = time.perf_counter()
         ran = subprocess.run([*command, "--messages", trace], capture_output=True, text=True, check=True)
         took = time.perf_counter() - began

@@ -167,7 +167,15 @@ def test_invariant_24_a_replay_is_equal_to_the_byte_whatever_the_hashes_and_the_
     (site / "tanks").mkdir(parents=True)
     for source in sorted(given.rglob("*.yaml"), reverse=turned):
         shutil.copyfile(source, site / source.relative_to(given))
-    command = [sys.executable, "-c", "from gateway.cli import main; main()", "replay", site, "--messages", path]
+    command: list[str | Path] = [
+        sys.executable,
+        "-c",
+        "from gateway.cli import main; main()",
+        "replay",
+        site,
+        "--messages",
+        path,
+    ]
     told = [
         subprocess.run([*command, "--values"], env={"PYTHONHASHSEED": seed}, capture_output=True, check=True).stdout,
         run("replay", given, "--messages", path, "--values").out.encode(),
