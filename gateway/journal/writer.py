@@ -91,8 +91,8 @@ class Writer:
 
     def _run(self) -> None:
         while (batches := self._next()) is not None:
-            if batches and not self._try(batches):
-                self._put_back(batches)
+            if left := self._keep(batches):
+                self._put_back(left)
                 if self._closing:
                     return
                 with self._ready:
@@ -108,21 +108,43 @@ class Writer:
             self._inputs = 0
         return batches or None
 
-    def _try(self, batches: list[Batch]) -> bool:
-        """Write all in one transaction; return whether they are on disk."""
+    def _keep(self, batches: list[Batch]) -> list[Batch]:
+        """Write all in one transaction; return what is not on disk and is to be tried again."""
         try:
             self._write(batches)
-        except (sqlite3.Error, ValueError, OverflowError) as problem:  # the disk; or a row that no journal can hold
-            self._undo()
-            self._failing = True
-            self._trouble(f"the journal cannot be written: {problem}")
-            return False
+        except sqlite3.Error as problem:
+            self._fail(f"the journal cannot be written: {problem}")
+            return batches
+        except Exception as problem:  # noqa: BLE001 - a row that no journal can hold must not keep out all others
+            self._fail(f"the journal cannot hold what the gateway tells it; what can be kept is kept: {problem!r}")
+            return self._keep_each(batches)
         if self._failing:
             self._failing = False
             self._trouble(None)
         for batch in batches:
             self._committed(batch.token)
-        return True
+        return []
+
+    def _keep_each(self, batches: list[Batch]) -> list[Batch]:
+        """Write each batch by itself; of one that cannot be written, the inputs: all else follows from them."""
+        if len(batches) == 1:
+            return self._keep_inputs(batches[0])
+        for index, batch in enumerate(batches):
+            if self._keep([batch]):
+                return batches[index:]
+        return []
+
+    def _keep_inputs(self, batch: Batch) -> list[Batch]:
+        if batch.effects or batch.snapshots:
+            return self._keep([Batch(batch.events, token=batch.token)])
+        self.dropped += len(batch.events)
+        self._committed(batch.token)  # or the broker would send it again for ever
+        return []
+
+    def _fail(self, trouble: str) -> None:
+        self._undo()
+        self._failing = True
+        self._trouble(trouble)
 
     def _write(self, batches: list[Batch]) -> None:
         execute = self._connection.execute

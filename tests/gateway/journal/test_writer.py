@@ -197,17 +197,31 @@ def test_settings_that_cannot_be_kept_are_told(tmp_path: Path) -> None:
         EffectRow(2, 2, 2**63, "note", "x", {}),
     ],
 )
-def test_a_row_that_no_journal_can_hold_is_told_and_stays_unreported(tmp_path: Path, row: EffectRow) -> None:
-    """A mistake of ours does not end the writer in silence."""
+def test_an_effect_that_no_journal_can_hold_costs_no_input_and_holds_up_nothing(tmp_path: Path, row: EffectRow) -> None:
+    """A mistake of ours is told; the inputs are kept, since effects can be recomputed from them."""
     path, heard = tmp_path / "j.db", Heard()
     writer = a_writer(path, heard)
     writer.submit(Batch([EventRow(1, 1, Wake(1))], token=1))
-    assert eventually(lambda: heard.committed)
     writer.submit(Batch([EventRow(2, 2, Wake(2))], [row], token=2))
-    assert eventually(lambda: heard.trouble)
-    assert not writer.close()
-    assert heard.committed == [1]
-    assert Reader(path).last_seq() == 1
+    writer.submit(Batch([EventRow(3, 3, Wake(3))], token=3))
+    assert writer.close()
+    assert heard.committed == [1, 2, 3]
+    assert "cannot hold" in (heard.trouble[0] or "")
+    assert heard.trouble[-1] is None
+    assert [event.seq for event in Reader(path).events()] == [1, 2, 3]
+    assert writer.dropped == 0
+
+
+def test_an_input_that_no_journal_can_hold_is_counted_and_holds_up_nothing(tmp_path: Path) -> None:
+    """It is acknowledged all the same, or the broker would send it for ever."""
+    path, heard = tmp_path / "j.db", Heard()
+    writer = a_writer(path, heard)
+    writer.submit(Batch([EventRow(1, 1, Message(1, "\ud800", b""))], token=1))
+    writer.submit(Batch([EventRow(2, 2, Wake(2))], token=2))
+    assert writer.close()
+    assert heard.committed == [1, 2]
+    assert [event.seq for event in Reader(path).events()] == [2]
+    assert writer.dropped == 1
 
 
 def test_a_folder_that_cannot_be_written_is_refused_by_name(tmp_path: Path) -> None:
