@@ -13,12 +13,13 @@ from collections.abc import Iterable
 from typing import Any, assert_never
 
 from rules.arbitration import Decision, Fallback, arbitrate
-from rules.conditions.compile import DIGITS, Board
+from rules.conditions.board import Board
+from rules.conditions.terms import DIGITS
 from rules.conditions.tree import SECOND
 from rules.effects import Commanded, Effect, Noted, ReasonChanged, RuleChanged, netted
 from rules.events import Event, LinkLost, LinkProven, Passed, Signals, Started
 from rules.grace import Grace
-from rules.model import ActuatorDecl, Fault, Rank, Signal, SiteDecl
+from rules.model import ActuatorDecl, Fault, Rank, Signal, SiteDecl, Value
 from rules.rule import Rule, Side, earlier
 
 MOST_PASSES = 8  # rules that still move actuators after so many passes at one instant chase each other
@@ -154,7 +155,7 @@ class Engine:
         if touched:
             self._settle(t, touched, effects)
 
-    def _crossed(self, slot: int, value: float | str | None) -> bool:
+    def _crossed(self, slot: int, value: Value) -> bool:
         """Return whether a changed signal can change any truth: not while it stays between the same two edges."""
         place = self._place(slot, value)
         if place is not None and place == self._between[slot]:
@@ -162,7 +163,7 @@ class Engine:
         self._between[slot] = place
         return True
 
-    def _place(self, slot: int, value: float | str | None) -> int | None:
+    def _place(self, slot: int, value: Value) -> int | None:
         """Return between which edges a value stands, on an edge being a place of its own; None where that says nothing.
 
         While a value stays in its place, no comparison with it changes.

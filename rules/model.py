@@ -4,6 +4,7 @@ Frozen descriptions and nothing that changes. `gateway.settings` writes them fro
 them once. Quantities are in SI units, times and durations in whole nanoseconds.
 """
 
+import math
 from dataclasses import dataclass
 from enum import IntEnum, StrEnum
 from typing import NamedTuple
@@ -23,10 +24,28 @@ class Fault(IntEnum):
     FAILED = 3  # it comes, and is not a measurement
 
 
-class Signal(NamedTuple):
-    """A signal at one instant. `value` is a number in SI units, a contact's word, or None when there is a fault."""
+class Bounds(NamedTuple):
+    """All that is known of a number: it lies between `low` and `high`, both included. Either may be infinite."""
 
-    value: float | str | None
+    low: float
+    high: float
+
+    def save(self) -> list[float | None]:
+        """Return both ends as plain JSON values, None for an infinite one."""
+        return [end if math.isfinite(end) else None for end in self]
+
+
+Value = float | str | Bounds | None
+
+
+class Signal(NamedTuple):
+    """A signal at one instant.
+
+    `value` is a number in SI units, the bounds between which it is known to lie, a contact's word, or None when there
+    is a fault.
+    """
+
+    value: Value
     fault: Fault
 
 

@@ -8,7 +8,8 @@ and `from` is known to be false, unless it says `release`. Time comes as a numbe
 from enum import Enum, IntEnum
 from typing import Any, assert_never
 
-from rules.conditions.compile import Board, Compiled, compile_condition
+from rules.conditions.board import Board
+from rules.conditions.compile import Compiled, compile_condition
 from rules.model import OnUnknown, Rank, Rhythm, RuleDecl
 from rules.truth import UNKNOWN
 

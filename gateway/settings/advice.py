@@ -6,7 +6,7 @@ from gateway.plan import PlantPlan
 from gateway.settings.models import Site
 from gateway.settings.names import full, parts
 from gateway.settings.units import SECOND
-from rules.conditions.compile import constant
+from rules.conditions.terms import constant
 from rules.conditions.tree import And, AtLeast, Comparison, Condition, Held, Name, Not, Or, Relation
 from rules.model import OnUnknown, Rank, RuleDecl
 

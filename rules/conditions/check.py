@@ -10,8 +10,8 @@ from dataclasses import dataclass, replace
 from typing import Protocol, assert_never
 
 from rules.conditions import later
-from rules.conditions.compile import constant
 from rules.conditions.errors import ConditionError
+from rules.conditions.terms import constant
 from rules.conditions.tree import (
     And,
     AtLeast,

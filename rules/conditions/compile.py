@@ -2,16 +2,14 @@
 
 A compiled condition is evaluated as a function of time: whatever pass asks, the answer at `t` is the same. Every part
 is evaluated every time, since a `for` inside must see each change of its part; nothing is cut short.
-
-`X for d` at `t` is the least that X was at any instant of the closed window [t - d, t]. Its state is three values: what
-X is now, `f` the end of X's latest false stretch, `u` the end of its latest unknown stretch. On signals that are never
-unknown this is the on-delay (TON) of IEC 61131-3 evaluated at its exact expiry.
 """
 
-import operator
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Sequence
 from typing import Any, assert_never
 
+from rules.conditions.board import Board, saved
+from rules.conditions.terms import DIGITS, TEST, Number, compared, constant, names_in, product, spread, total
+from rules.conditions.timer import Evaluate, Timer
 from rules.conditions.tree import (
     SECOND,
     And,
@@ -32,21 +30,10 @@ from rules.conditions.tree import (
     Sum,
     Term,
 )
-from rules.model import ActuatorDecl, Fault, Signal, SignalDecl
+from rules.model import Bounds, Fault
 from rules.truth import FALSE, TRUE, UNKNOWN, Truth, at_least
 
-DIGITS = 6  # levels are compared to a micrometre: below that, the arithmetic's own noise would decide
-
-Evaluate = Callable[[int], int]
 Explain = Callable[[int], dict[str, Any]]
-_Number = Callable[[], float | None]
-
-_TEST: dict[Relation, Callable[[float, float], bool]] = {
-    Relation.ABOVE: operator.gt,
-    Relation.BELOW: operator.lt,
-    Relation.AT_LEAST: operator.ge,
-    Relation.AT_MOST: operator.le,
-}
 
 _STATUS: dict[str, Callable[[Fault], bool]] = {
     "usable": lambda fault: fault is Fault.NONE,
@@ -58,93 +45,13 @@ _STATUS: dict[str, Callable[[Fault], bool]] = {
 _FAULT_WORDS = {Fault.NONE: None, Fault.AWAITED: "nothing yet", Fault.SILENT: "silent", Fault.FAILED: "failed"}
 
 
-class Board:
-    """Every signal as it is now. An actuator is a signal too: its value is the state it was last commanded to."""
-
-    def __init__(self, signals: Iterable[SignalDecl], actuators: Iterable[ActuatorDecl]) -> None:
-        decls = list(signals)
-        names = [decl.name for decl in decls] + [decl.name for decl in actuators]
-        self.slot = {name: slot for slot, name in enumerate(names)}
-        self.unit = {decl.name: decl.dimension.unit if decl.dimension else "" for decl in decls}
-        self.values: list[float | str | None] = [None] * len(names)
-        self.faults: list[Fault] = [Fault.AWAITED] * len(names)
-
-    def put(self, slot: int, signal: Signal) -> None:
-        """Let a signal be what it is now."""
-        self.values[slot], self.faults[slot] = signal
-
-    def forget(self) -> None:
-        """Know nothing of any signal."""
-        self.values[:] = [None] * len(self.values)
-        self.faults[:] = [Fault.AWAITED] * len(self.faults)
-
-    def save(self) -> list[list[Any]]:
-        """Return every signal as plain JSON values."""
-        return [self.values[:], [int(fault) for fault in self.faults]]
-
-    def restore(self, saved: list[list[Any]]) -> None:
-        """Take up what `save` returned."""
-        self.values[:] = saved[0]
-        self.faults[:] = [Fault(fault) for fault in saved[1]]
-
-
-class _Timer:
-    """The state of one `for`."""
-
-    __slots__ = ("duration", "false_end", "now", "part", "unknown_end")
-
-    def __init__(self, part: Evaluate, duration: int) -> None:
-        self.part = part
-        self.duration = duration
-        self.now: int = UNKNOWN
-        self.false_end: int | None = None  # None: it never was false
-        self.unknown_end: int | None = None
-
-    def evaluate(self, t: int) -> int:
-        """Return the least of the window that ends at `t`."""
-        now = self.part(t)
-        if now != self.now:
-            if self.now == FALSE:
-                self.false_end = t
-            elif self.now == UNKNOWN:
-                self.unknown_end = t
-            self.now = now
-        since = t - self.duration
-        if now == FALSE or (self.false_end is not None and since < self.false_end):
-            return FALSE
-        if now == UNKNOWN or (self.unknown_end is not None and since < self.unknown_end):
-            return UNKNOWN
-        return TRUE
-
-    def next_change(self, t: int) -> int | None:
-        """Return when the answer may change by itself, after `t`."""
-        if self.now == FALSE:
-            return None
-        if self.false_end is not None and (due := self.false_end + self.duration) > t:
-            return due
-        if self.now == TRUE and self.unknown_end is not None and (due := self.unknown_end + self.duration) > t:
-            return due
-        return None
-
-    def begin(self, t: int) -> None:
-        """Forget all: before `t` nothing is known."""
-        self.now = UNKNOWN
-        self.false_end, self.unknown_end = None, t
-
-    def holding_since(self) -> int | None:
-        """Return since when the part is true, or None."""
-        if self.now != TRUE:
-            return None
-        return max((end for end in (self.false_end, self.unknown_end) if end is not None), default=None)
-
-
 class Compiled:
     """One condition with its timers."""
 
     __slots__ = ("_board", "_timers", "bounds", "evaluate", "explain", "inputs")
 
     def __init__(
-        self, board: Board, inputs: Sequence[int], evaluate: Evaluate, explain: Explain, timers: Sequence[_Timer]
+        self, board: Board, inputs: Sequence[int], evaluate: Evaluate, explain: Explain, timers: Sequence[Timer]
     ) -> None:
         self._board = board
         self._timers = tuple(timers)
@@ -200,7 +107,7 @@ class _Workshop:
     def __init__(self, board: Board) -> None:
         self.board = board
         self.inputs: list[int] = []
-        self.timers: list[_Timer] = []
+        self.timers: list[Timer] = []
         # For each slot that is only compared with constants, those constants: while a value stays between the same two
         # of them, no truth changes. None for a slot that is read in any other way.
         self.bounds: dict[int, list[float] | None] = {}
@@ -232,7 +139,7 @@ class _Workshop:
         self.bounds[slot] = None
         return slot
 
-    def number(self, term: Term) -> _Number:
+    def number(self, term: Term) -> Number:
         match term:
             case Literal() | Name() if term.quantity is not None:
                 constant = term.quantity.value
@@ -240,25 +147,25 @@ class _Workshop:
             case Name():
                 return self._signal(self._slot(term.name))
             case Sum():
-                return _sum(self.number(term.left), self.number(term.right), -1.0 if term.minus else 1.0)
+                return total(self.number(term.left), self.number(term.right), -1.0 if term.minus else 1.0)
             case Product():
-                return _product(term.factor, self.number(term.term))
+                return product(term.factor, self.number(term.term))
             case _:
                 raise ValueError(f"{term} has not been checked")
 
-    def _signal(self, slot: int) -> _Number:
+    def _signal(self, slot: int) -> Number:
         values = self.board.values
 
-        def read() -> float | None:
+        def read() -> float | Bounds | None:
             value = values[slot]
-            return value if isinstance(value, float) else None
+            return value if isinstance(value, float | Bounds) else None
 
         return read
 
     # ---- basic conditions -----------------------------------------------------------------------------------------
 
     def _comparison(self, node: Comparison) -> tuple[Evaluate, Explain]:
-        test = _TEST[node.relation]
+        relation = node.relation
         fast = self._against_constant(node)
         if fast is not None:
             return self._explained(node, fast, (node.left, node.right))
@@ -266,9 +173,7 @@ class _Workshop:
 
         def evaluate(_: int) -> int:
             a, b = left(), right()
-            if a is None or b is None:
-                return UNKNOWN
-            return TRUE if test(round(a, DIGITS), round(b, DIGITS)) else FALSE
+            return UNKNOWN if a is None or b is None else compared(relation, spread(a), spread(b))
 
         return self._explained(node, evaluate, (node.left, node.right))
 
@@ -277,8 +182,9 @@ class _Workshop:
         left, bound = node.left, constant(node.right)
         if not isinstance(left, Name) or left.quantity is not None or bound is None:
             return None
-        slot, values, test = self.board.slot[left.name], self.board.values, _TEST[node.relation]
-        bound = round(bound, DIGITS)
+        slot, values, relation = self.board.slot[left.name], self.board.values, node.relation
+        test, bound = TEST[relation], round(bound, DIGITS)
+        exact = spread(bound)
         self.inputs.append(slot)
         bounds = self.bounds.setdefault(slot, [])
         if bounds is not None:
@@ -286,9 +192,9 @@ class _Workshop:
 
         def evaluate(_: int) -> int:
             value = values[slot]
-            if value is None:
-                return UNKNOWN
-            return TRUE if test(round(value, DIGITS), bound) else FALSE  # type: ignore[arg-type]  # a number: checked
+            if isinstance(value, float):
+                return TRUE if test(round(value, DIGITS), bound) else FALSE
+            return compared(relation, spread(value), exact) if isinstance(value, Bounds) else UNKNOWN
 
         return evaluate
 
@@ -299,7 +205,11 @@ class _Workshop:
             x, a, b = value(), low(), high()
             if x is None or a is None or b is None:
                 return UNKNOWN
-            return TRUE if round(a, DIGITS) <= round(x, DIGITS) <= round(b, DIGITS) else FALSE
+            x = spread(x)
+            return min(
+                compared(Relation.AT_LEAST, x, spread(a)),
+                compared(Relation.AT_MOST, x, spread(b)),
+            )
 
         return self._explained(node, evaluate, (node.term, node.low, node.high))
 
@@ -340,7 +250,7 @@ class _Workshop:
 
     def _held(self, node: Held) -> tuple[Evaluate, Explain]:
         part, told = self.condition(node.part)
-        timer = _Timer(part, node.nanoseconds)
+        timer = Timer(part, node.nanoseconds)
         self.timers.append(timer)
 
         def explain(t: int) -> dict[str, Any]:
@@ -359,7 +269,7 @@ class _Workshop:
 
     def _explained(self, node: Condition, evaluate: Evaluate, terms: tuple[Term, ...]) -> tuple[Evaluate, Explain]:
         board = self.board
-        names = [name for term in terms for name in _names(term)]
+        names = [name for term in terms for name in names_in(term)]
 
         def explain(t: int) -> dict[str, Any]:
             return {
@@ -369,37 +279,6 @@ class _Workshop:
             }
 
         return evaluate, explain
-
-
-def constant(term: Term) -> float | None:
-    """Return what a checked term is worth when it never changes, else None."""
-    match term:
-        case Literal() | Name():
-            return None if term.quantity is None else term.quantity.value
-        case Sum():
-            left, right = constant(term.left), constant(term.right)
-            return None if left is None or right is None else left + (-right if term.minus else right)
-        case Product():
-            inner = constant(term.term)
-            return None if inner is None else term.factor * inner
-        case _:
-            assert_never(term)
-
-
-def _sum(left: _Number, right: _Number, sign: float) -> _Number:
-    def read() -> float | None:
-        a, b = left(), right()
-        return None if a is None or b is None else a + sign * b
-
-    return read
-
-
-def _product(factor: float, term: _Number) -> _Number:
-    def read() -> float | None:
-        value = term()
-        return None if value is None else factor * value
-
-    return read
 
 
 def _joined(node: And | Or | AtLeast, parts: list[Evaluate]) -> Evaluate:
@@ -422,22 +301,10 @@ def _composed(node: Condition, evaluate: Evaluate, told: tuple[Explain, ...]) ->
     return explain
 
 
-def _names(term: Term) -> list[Name]:
-    match term:
-        case Name():
-            return [term]
-        case Sum():
-            return _names(term.left) + _names(term.right)
-        case Product():
-            return _names(term.term)
-        case _:
-            return []
-
-
 def _term(board: Board, name: Name) -> dict[str, Any]:
     """Return one name of a comparison with its value, for people."""
     if name.quantity is not None:
         return {"name": name.name, "value": name.quantity.value, "unit": name.quantity.dimension.unit, "fault": None}
     slot = board.slot[name.name]
-    fault = _FAULT_WORDS[board.faults[slot]]
-    return {"name": name.name, "value": board.values[slot], "unit": board.unit.get(name.name, ""), "fault": fault}
+    value, fault = saved(board.values[slot]), _FAULT_WORDS[board.faults[slot]]
+    return {"name": name.name, "value": value, "unit": board.unit.get(name.name, ""), "fault": fault}

@@ -2,11 +2,12 @@
 
 from collections.abc import Iterable
 
+from rules.conditions.board import Board
 from rules.conditions.check import Meaning, check
-from rules.conditions.compile import Board, Compiled, compile_condition
+from rules.conditions.compile import Compiled, compile_condition
 from rules.conditions.parse import parse
 from rules.conditions.tree import SECOND, Condition
-from rules.model import ActuatorDecl, Fault, Signal, SignalDecl
+from rules.model import ActuatorDecl, Bounds, Fault, Signal, SignalDecl, Value
 from rules.quantity import Dimension, Quantity
 from rules.truth import FALSE, TRUE
 
@@ -14,6 +15,7 @@ CONTACTS = ("a", "b", "c")
 SIGNALS = (
     *(SignalDecl(name=name, words=("yes", "no")) for name in CONTACTS),
     SignalDecl(name="x", dimension=Dimension.LENGTH),
+    SignalDecl(name="y", dimension=Dimension.LENGTH),
 )
 
 
@@ -56,10 +58,10 @@ class Trial:
         self.compiled: Compiled = compile_condition(sentence(text), self.board)
         self.compiled.begin(0)
 
-    def put(self, name: str, truth: int | None = None, *, value: float | None = None) -> None:
-        """Let a contact be yes, no or unknown; or the quantity be a value."""
+    def put(self, name: str, truth: int | None = None, *, value: float | Bounds | None = None) -> None:
+        """Let a contact be yes, no or unknown; or the quantity be a value, or known within bounds."""
         words: dict[int, str] = {TRUE: "yes", FALSE: "no"}
-        word: float | str | None = words.get(truth) if truth is not None else value
+        word: Value = words.get(truth) if truth is not None else value
         self.board.put(self.board.slot[name], Signal(word, Fault.NONE if word is not None else Fault.SILENT))
 
     def at(self, seconds: float) -> int:

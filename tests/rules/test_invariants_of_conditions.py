@@ -1,11 +1,14 @@
 """Properties that conditions have for any signals: invariants 1 to 6."""
 
+import math
 from itertools import product
 
+import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 from sentences import CONTACTS, Trial
 
+from rules.model import Bounds
 from rules.truth import FALSE, TRUE, UNKNOWN, at_least, negate
 
 TRUTHS = st.sampled_from((FALSE, UNKNOWN, TRUE))
@@ -103,3 +106,68 @@ def test_invariant_06_a_vote_is_decided_exactly_when_every_completion_agrees(nee
     outcomes = {sum(vote == TRUE for vote in votes) >= needed for votes in completions}
     expected = UNKNOWN if len(outcomes) == 2 else TRUE if True in outcomes else FALSE
     assert at_least(needed, votes) == expected
+
+
+COMPARISONS = (
+    "x above 1 m",
+    "x below y",
+    "x at least y + 1 m",
+    "x - y at most 0.5 m",
+    "-2 * x > y",
+    "x between 1 m and 2 m",
+    "x between y and 3 m",
+    "not (x <= 2 * y)",
+)
+VALUES = st.integers(-8, 8).map(lambda quarters: quarters / 4)
+ENDS = st.tuples(VALUES | st.just(-math.inf), VALUES | st.just(math.inf))
+WITHIN = ENDS.map(lambda ends: Bounds(min(ends), max(ends)))
+
+
+@given(st.sampled_from(COMPARISONS), WITHIN, WITHIN | VALUES, st.data())
+def test_what_bounds_decide_holds_for_every_value_within_them(
+    text: str, x: Bounds, y: Bounds | float, data: st.DataObject
+) -> None:
+    """An answer that is true or false with bounds in it is that of any values within them."""
+    answer = compared(text, x, y)
+    for _ in range(6):
+        exact = compared(text, data.draw(_inside(x)), data.draw(_inside(y)))
+        assert exact != UNKNOWN
+        assert answer in {UNKNOWN, exact}
+
+
+def _inside(known: Bounds | float) -> st.SearchStrategy[float]:
+    if isinstance(known, float):
+        return st.just(known)
+    low, high = max(known.low, -100.0), min(known.high, 100.0)
+    return st.sampled_from([low, high, (low + high) / 2])
+
+
+def compared(text: str, x: Bounds | float, y: Bounds | float) -> int:
+    """Return the truth of a comparison of the two levels."""
+    trial = Trial(text)
+    trial.put("x", value=x)
+    trial.put("y", value=y)
+    return trial.at(0)
+
+
+BOUNDED = [
+    ("x above 1 m", Bounds(1.5, math.inf), TRUE),
+    ("x above 1 m", Bounds(0.5, math.inf), UNKNOWN),
+    ("x above 1 m", Bounds(-math.inf, 1.0), FALSE),
+    ("x at least 1 m", Bounds(1.0, math.inf), TRUE),
+    ("x below 2 m", Bounds(2.0, math.inf), FALSE),
+    ("x below 2 m", Bounds(-math.inf, 1.9), TRUE),
+    ("x between 1 m and 2 m", Bounds(1.2, 1.8), TRUE),
+    ("x between 1 m and 2 m", Bounds(2.1, math.inf), FALSE),
+    ("x + 1 m above 2 m", Bounds(1.5, math.inf), TRUE),
+    ("2 m - x above 1 m", Bounds(1.5, math.inf), FALSE),
+    ("x is usable", Bounds(0.0, 1.0), TRUE),
+]
+
+
+@pytest.mark.parametrize(("text", "known", "truth"), BOUNDED)
+def test_a_level_known_only_within_bounds_is_used_one_sidedly(text: str, known: Bounds, truth: int) -> None:
+    """A comparison that the bound settles is true or false, any other unknown."""
+    trial = Trial(text)
+    trial.put("x", value=known)
+    assert trial.at(0) == truth
