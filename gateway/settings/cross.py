@@ -5,7 +5,7 @@ Each check yields complaints with their place; none stops at the first.
 
 from collections.abc import Iterator, Mapping
 
-from gateway.measure.sensing import SENSES
+from gateway.measure.sensing import ONLY_SOME_USE, SENSES
 from gateway.settings.assemble import ALIVE_WORDS, choice_of, condition_of, demand_of, method_of
 from gateway.settings.complaint import Complaint
 from gateway.settings.load import SITE_FILE
@@ -84,11 +84,13 @@ def _sensors(part: Common, place: _Place) -> Iterator[Complaint]:
     for name, sensor in part.sensors.items():
         path: Path = ("sensors", name)
         yield from _timing(sensor, place, path)
+        yield from (slips := [*_unused(sensor, place, path), *_bounds(sensor, place, path)])
         if sensor.senses == "contact":
             yield from _contact(sensor, place, path)
             continue
-        yield from _unit_fits(sensor, place, path)
-        yield from _bounds(sensor, place, path)
+        yield from (misfits := list(_unit_fits(sensor, place, path)))
+        if slips or misfits:
+            continue  # what the method would say of them is said already
         try:
             method_of(sensor, owner)
         except ValueError as problem:
@@ -111,12 +113,16 @@ def _timing(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
             yield place.say(alive, "`yes` is missing")
 
 
+def _unused(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
+    """Complain of each key that this way to sense does not use, so that nobody believes that it does something."""
+    for key in sorted(ONLY_SOME_USE - SENSES[sensor.senses].uses):
+        if getattr(sensor, key) is not None:
+            yield place.say_key((*path, key), f"`{sensor.senses}` does not use `{key}`")
+
+
 def _contact(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
     if sensor.payloads is not None and len(set(sensor.payloads.values())) < len(sensor.payloads):
         yield place.say((*path, "payloads"), "two words have the same payload")
-    for key in ("calibration", "span", "unit", "range"):
-        if getattr(sensor, key) is not None:
-            yield place.say_key((*path, key), f"a contact has no {key}")
 
 
 def _unit_fits(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
@@ -127,8 +133,6 @@ def _unit_fits(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]
     for index, bound in enumerate(sensor.range or ()):
         if bound.dimension not in wanted:
             yield place.say((*path, "range", index), f"this is {bound.dimension.words}; expected {kinds}")
-    if sensor.payloads is not None:
-        yield place.say_key((*path, "payloads"), "only a contact has payloads")
 
 
 def _bounds(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
@@ -144,8 +148,6 @@ def _bounds(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
             yield place.say((*path, key), "a span that is not a length is not yet supported")
         elif pair[0].value == pair[1].value:
             yield place.say((*path, key), "the two values are the same")
-    if sensor.span is not None and sensor.senses != "current":
-        yield place.say_key((*path, "span"), f"`{sensor.senses}` has no span")
 
 
 # ---- actuators and topics -----------------------------------------------------------------------------------
