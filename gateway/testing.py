@@ -84,6 +84,7 @@ class Mosquitto:
                 stderr=log,
             )
         if not eventually(self._answers):
+            self.kill()
             raise TimeoutError(f"mosquitto has not started:\n{self.log}")
 
     def stop(self) -> None:
@@ -137,7 +138,7 @@ class Mosquitto:
             self._process = None
 
 
-class _Server:
+class Server:
     """Accepts connections in a daemon thread and hands each to `meet`."""
 
     def __init__(self) -> None:
@@ -181,14 +182,14 @@ class _Server:
             threading.Thread(target=self.meet, args=(sock,), daemon=True).start()
 
 
-class MuteServer(_Server):
+class MuteServer(Server):
     """Accepts, and never says a word."""
 
     def meet(self, sock: socket.socket) -> None:
         """Leave it open."""
 
 
-class RudeServer(_Server):
+class RudeServer(Server):
     """Waits for the first words, says `answer`, and closes."""
 
     def __init__(self, answer: bytes = b"") -> None:
@@ -203,7 +204,7 @@ class RudeServer(_Server):
             sock.shutdown(socket.SHUT_RDWR)
 
 
-class Proxy(_Server):
+class Proxy(Server):
     """Passes bytes on to `port`, both ways, until told to `stall`: then it swallows nothing and passes nothing on."""
 
     def __init__(self, port: int) -> None:
