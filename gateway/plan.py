@@ -3,7 +3,7 @@
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
-from gateway.measure.sensor import SensorPlan
+from gateway.measure.sensor_plan import SensorPlan
 from gateway.measure.shapes import Shape
 from rules.model import SiteDecl
 

@@ -11,7 +11,7 @@ from typing import Any, assert_never
 
 from gateway.effects import Command, Effect, Note, Reason, RuleChange, SensorChange, Value
 from gateway.events import ClockSet, Event, LinkDown, LinkUp, Message, Start, Stop, Wake
-from gateway.measure.payload import shown_payload
+from gateway.measure.payloads.payload import shown_payload
 from gateway.measure.sensor import Sensor
 from gateway.measure.status import Status
 from gateway.plan import PlantPlan, TankPlan

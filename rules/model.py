@@ -7,7 +7,7 @@ them once. Quantities are in SI units, times and durations in whole nanoseconds.
 import math
 from dataclasses import dataclass
 from enum import IntEnum, StrEnum
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 from rules.conditions.tree import Condition
 from rules.quantity import Dimension
@@ -36,6 +36,19 @@ class Bounds(NamedTuple):
 
 
 Value = float | str | Bounds | None
+
+
+def saved(value: Value) -> Any:
+    """Return a value as plain JSON."""
+    return value.save() if isinstance(value, Bounds) else value
+
+
+def restored(plain: Any) -> Value:
+    """Return the value that `saved` returned as plain JSON."""
+    if not isinstance(plain, list):
+        return plain  # type: ignore[no-any-return]  # a number, a word or nothing, as JSON has it
+    low, high = plain
+    return Bounds(-math.inf if low is None else low, math.inf if high is None else high)
 
 
 class Signal(NamedTuple):

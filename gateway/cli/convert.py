@@ -6,7 +6,8 @@ import typer
 
 from gateway.cli.common import AsJson, SiteArgument, named, print_json
 from gateway.errors import InputError
-from gateway.measure.sensor import SensorPlan, convert
+from gateway.measure.reading import convert
+from gateway.measure.sensor_plan import SensorPlan
 from gateway.plan import TankPlan
 from gateway.settings.assemble import plant_plan
 from gateway.settings.load import load

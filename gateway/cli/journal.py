@@ -10,7 +10,7 @@ from gateway.errors import InputError
 from gateway.events import Message
 from gateway.journal.reader import Reader, Span
 from gateway.journal.records import EffectRow, EventRow, told
-from gateway.measure.payload import shown_payload
+from gateway.measure.payloads.payload import shown_payload
 from gateway.plant import Plant
 from gateway.recall import reader_of
 from gateway.settings.assemble import plant_plan

@@ -10,7 +10,7 @@ import typer
 from gateway.cli.common import AsJson, SiteArgument, named, print_json
 from gateway.connect import link_options
 from gateway.link.tap import Heard, Tap
-from gateway.measure.payload import shown_payload
+from gateway.measure.payloads.payload import shown_payload
 from gateway.measure.sensor import Sensor
 from gateway.plan import PlantPlan
 from gateway.settings.assemble import plant_plan

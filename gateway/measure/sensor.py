@@ -1,85 +1,68 @@
 """One sensor: from the messages on its topic to a judged value.
 
-payload → raw value → range → method → judge. Pure: time comes as a number, `deadline` says when the value next changes
-by itself.
+payload → raw value and its age → range → method → plausible? → covered? → calmed → judge. Pure: time comes as a number,
+`deadline` says when the value next changes by itself.
 """
 
-import base64
-import math
 from collections.abc import Mapping
-from dataclasses import dataclass, field
-from typing import Any, NamedTuple
+from typing import Any
 
-from gateway.measure.judge import FAULTS, Happens, Judge, State
-from gateway.measure.payload import PayloadError, Pointer, read_number, read_word, shown
-from gateway.measure.sensing.method import Converted, Method
-from gateway.measure.status import Status
-from rules.model import Fault, Signal
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class AlivePlan:
-    """Where a sensor that sends only changes says whether it is alive, and in which words."""
-
-    topic: str
-    pointer: Pointer | None = None
-    words: Mapping[str, bool] = field(default_factory=dict)  # payload → alive
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class SensorPlan:
-    """One sensor as the settings describe it. `name` is full; `scale` turns a payload's number into SI units.
-
-    Exactly one of `method` (a level) and `words` (a contact: payload → word) is given. `raw_range` is in SI units,
-    durations in ns. `alive` makes it a sensor that sends only changes.
-    """
-
-    name: str
-    topic: str
-    pointer: Pointer | None = None
-    method: Method | None = None
-    scale: float = 1.0
-    unit: str = ""
-    words: Mapping[str, str] = field(default_factory=dict)
-    raw_range: tuple[float, float] | None = None
-    silent_after: int | None = None
-    tolerate: int = 0
-    good_again: int = 2
-    alive: AlivePlan | None = None
-
-
-class Reading(NamedTuple):
-    """What one message came to. `raw` is in the sensor's own unit, or a word; `value` is a level in m, or a word."""
-
-    t: int
-    topic: str
-    payload: bytes
-    raw: float | str | None
-    value: float | str | None
-    status: Status
-    reason: str | None
-
-
-FARTHEST = 1e6  # m; no tank is so deep, and what is computed from a level stays far from overflowing
+from gateway.measure.payloads.payload import PayloadError, read_word, shown
+from gateway.measure.reading import Reading, Said, convert, reader_of, restored_reading
+from gateway.measure.sensor_plan import AlivePlan, SensorPlan
+from gateway.measure.status import Status, worse
+from gateway.measure.validity.age import Ages
+from gateway.measure.validity.filters import Despike, Lag
+from gateway.measure.validity.judge import FAULTS, Happens, Judge, State
+from gateway.measure.validity.plausible import Plausible
+from rules.model import Fault, Signal, Value, restored, saved
 
 _WAITING = "nothing has come yet"
-_HAPPENS = {True: Happens.SIGNALLED, False: Happens.REJECTED}
 
 
 class Sensor:
     """One sensor with what it last said."""
 
-    __slots__ = ("_alive", "_judge", "_lost", "accepted", "last", "on_change", "plan", "rejected", "signal", "used")
+    __slots__ = (
+        "_alive",
+        "_felt",
+        "_judge",
+        "_lost",
+        "_method",
+        "_read",
+        "_unfelt",
+        "_value",
+        "accepted",
+        "ages",
+        "calm",
+        "last",
+        "no_news",
+        "on_change",
+        "plan",
+        "plausible",
+        "rejected",
+        "signal",
+        "used",
+    )
 
     def __init__(self, plan: SensorPlan) -> None:
         self.plan = plan
         self.on_change = plan.alive is not None
         self._judge = Judge(None if self.on_change else plan.silent_after, plan.tolerate, plan.good_again)
+        self._read = reader_of(plan)
+        self._method = plan.method
+        self._felt: dict[str, float] = {}  # what the sensors that the method depends on have said
+        self._unfelt = dict.fromkeys(plan.feels, "a usual value is assumed")  # and which of them say nothing
         self._alive: bool | None = None
         self._lost: str | None = None
+        self._value: Value = None
+        self.ages = Ages(buffers=plan.buffers, old=plan.silent_after or 0) if _has_time(plan) else None
+        self.plausible = _plausible(plan)
+        self.calm = Calm(plan) if plan.despike or plan.lag else None
         self.signal = Signal(None, Fault.AWAITED)
         self.last: Reading | None = None
         self.used: Reading | None = None  # the reading that the signal rests on
+        self.no_news: Reading | None = None  # the last that was old, or has come before
         self.accepted = self.rejected = 0
 
     # ---- what the plant asks --------------------------------------------------------------------------------------
@@ -138,29 +121,52 @@ class Sensor:
 
     # ---- what can happen ------------------------------------------------------------------------------------------
 
-    def take(self, t: int, topic: str, payload: bytes, *, retained: bool) -> bool:
-        """Take a message on one of the topics; return whether the signal or its status may have changed."""
+    def take(self, t: int, topic: str, payload: bytes, *, retained: bool, offset: int = 0) -> bool:
+        """Take a message on one of the topics; return whether the signal or its status may have changed.
+
+        `offset` is wall time minus `t`, for readings that carry their own time.
+        """
         alive = self.plan.alive
         changed = False
         if alive is not None and topic == alive.topic:
             changed = self._hear_alive(alive, payload)
         if topic == self.plan.topic and (self.on_change or not retained):
-            reading, happens = self._read(t, topic, payload)
-            self.last = reading
-            if happens is Happens.ACCEPTED:
+            reading, happens, age = self._judged(t, topic, payload, offset)
+            if happens is None:
+                self.no_news = reading
+            elif happens is Happens.ACCEPTED:
+                self.last = self.used = reading
                 self.accepted += 1
-                self.used = reading
-                if self._judge.happens(happens, t) is State.GOOD and not self.on_change:
-                    self.signal = Signal(reading.value, Fault.NONE)  # as `_settle` would; nearly all readings are this
+                self._calmed(t, reading.value)
+                if self._judge.happens(happens, t - age) is State.GOOD and not self.on_change:
+                    self.signal = Signal(self._value, Fault.NONE)  # as `_settle` would; nearly all readings are this
                     return True
                 changed = True
             else:
+                self.last = reading
                 self.rejected += 1
                 before = self._judge.state
                 changed = self._judge.happens(happens, t) is not before or changed
         if changed:
             self._settle()
         return changed
+
+    def feel(self, what: str, value: float | None) -> None:
+        """Let another sensor, on which the method depends, say `value`; None: it is not usable.
+
+        Then what it said last stands, or else what the settings assume, and readings are out of specification.
+        """
+        if value is None:
+            self._unfelt[what] = "what it said last is used" if what in self._felt else "a usual value is assumed"
+            return
+        self._unfelt.pop(what, None)
+        if self._felt.get(what) != value:
+            self._felt[what] = value
+            self._feel_anew()
+
+    def _feel_anew(self) -> None:
+        if self.plan.method_at is not None:
+            self._method = self.plan.method_at(self._felt)
 
     def expire(self, t: int) -> bool:
         """Let the deadline pass, if it is `t` or before; return whether the signal may have changed."""
@@ -181,32 +187,79 @@ class Sensor:
 
     def _forget(self, t: int, reason: str | None) -> None:
         self._judge.begin(t)
-        self._alive, self._lost, self.used = None, reason, None
+        self._alive, self._lost, self.used, self._value = None, reason, None, None
+        if self.plausible is not None:
+            self.plausible.forget()
         self._settle()
 
     # ---- inside ---------------------------------------------------------------------------------------------------
 
-    def _read(self, t: int, topic: str, payload: bytes) -> tuple[Reading, Happens]:
-        plan = self.plan
+    def _judged(self, t: int, topic: str, payload: bytes, offset: int) -> tuple[Reading, Happens | None, int]:
+        """Return what a message comes to, what that is for the judge (None: no news), and its age in ns."""
         try:
-            if plan.method is None:
-                return self._read_word(t, topic, payload)
-            raw = read_number(payload, plan.pointer)
+            said = self._read(payload)
         except PayloadError as problem:
-            return Reading(t, topic, payload, None, None, Status.FAILURE, str(problem)), Happens.REJECTED
-        level, status, reason, signalled, held = convert(plan, plan.method, raw)
-        if level is None or (held and FAULTS[self._judge.state] is not Fault.NONE):
-            return Reading(t, topic, payload, raw, None, Status.FAILURE, reason), _HAPPENS[signalled]
-        return Reading(t, topic, payload, raw, level, status, reason), Happens.ACCEPTED
+            return Reading(t, topic, payload, None, None, Status.FAILURE, str(problem)), Happens.REJECTED, 0
+        age = 0
+        if self.ages is not None:
+            verdict = self._age(said, t + offset)
+            if verdict[0] is None:
+                return Reading(t, topic, payload, said.raw, None, Status.FAILURE, verdict[1]), None, 0
+            age = verdict[0]
+        value, status, reason, happens = self._worth(t, said.raw)
+        return Reading(t, topic, payload, said.raw, value, status, reason), happens, age
 
-    def _read_word(self, t: int, topic: str, payload: bytes) -> tuple[Reading, Happens]:
-        found = read_word(payload, self.plan.pointer)
-        word = self.plan.words.get(found)
+    def _age(self, said: Said, arrived: int) -> tuple[int | None, str | None]:
+        if self.ages is None or (said.own is None and said.ago is None):
+            return 0, None
+        if said.own is None:
+            return said.ago, None
+        return self.ages.take(arrived, said.own)
+
+    def _worth(self, t: int, raw: float | str) -> tuple[Value, Status, str | None, Happens]:
+        """Return what a raw value means: the value, its status with the reason, and what it is for the judge."""
+        method = self._method
+        if isinstance(raw, str) or method is None:
+            return self._word(str(raw))
+        level, status, reason, signalled, held = convert(self.plan, method, raw)
+        if level is None or (held and FAULTS[self._judge.state] is not Fault.NONE):
+            return None, Status.FAILURE, reason, Happens.SIGNALLED if signalled else Happens.REJECTED
+        if self.plausible is not None and (odd := self._odd(t, raw, level)):
+            return None, Status.FAILURE, *odd
+        if self._unfelt:
+            status, reason = worse((status, reason), (Status.OUT_OF_SPECIFICATION, self._unfelt_told()))
+        return level if self.plan.covers is None else self.plan.covers.of(level), status, reason, Happens.ACCEPTED
+
+    def _word(self, said: str) -> tuple[Value, Status, str | None, Happens]:
+        word = self.plan.words.get(said)
         if word is None:
             known = ", ".join(f"'{payload}'" for payload in self.plan.words)
-            reason = f"it says '{shown(found)}'; known are {known}"
-            return Reading(t, topic, payload, shown(found), None, Status.FAILURE, reason), Happens.REJECTED
-        return Reading(t, topic, payload, found, word, Status.GOOD, None), Happens.ACCEPTED
+            return None, Status.FAILURE, f"it says '{shown(said)}'; known are {known}", Happens.REJECTED
+        return word, Status.GOOD, None, Happens.ACCEPTED
+
+    def _odd(self, t: int, raw: float, level: float) -> tuple[str, Happens] | None:
+        """Return why a level cannot be true, if so, and what that is for the judge."""
+        plausible = self.plausible
+        if plausible is None:
+            return None
+        if (frozen := plausible.frozen(t, raw)) is not None:
+            return frozen, Happens.SIGNALLED
+        too_fast = plausible.too_fast(t, level)
+        if too_fast is None or self._judge.state is State.FAILED:
+            plausible.believe(t, level)  # after a failure, readings are compared with each other
+        return None if too_fast is None else (too_fast, Happens.REJECTED)
+
+    def _unfelt_told(self) -> str:
+        return "; ".join(f"{self.plan.feels[what]} is not usable: {told}" for what, told in self._unfelt.items())
+
+    def _calmed(self, t: int, value: Value) -> None:
+        """Take the value of an accepted reading, without its spikes and ripples."""
+        if self.calm is None or not isinstance(value, float):
+            self._value = value
+            return
+        if self.signal.fault is not Fault.NONE:
+            self.calm.forget()
+        self._value = self.calm.take(t, value)
 
     def _hear_alive(self, alive: AlivePlan, payload: bytes) -> bool:
         before = self._alive
@@ -222,7 +275,7 @@ class Sensor:
         if fault is Fault.NONE and self.on_change and not self._alive:
             fault = Fault.AWAITED if self._alive is None else Fault.SILENT
         usable = fault is Fault.NONE and self.used is not None
-        self.signal = Signal(self.used.value if usable and self.used else None, fault)
+        self.signal = Signal(self._value if usable else None, fault)
 
     # ---- saving ---------------------------------------------------------------------------------------------------
 
@@ -232,56 +285,68 @@ class Sensor:
             "judge": self._judge.save(),
             "alive": self._alive,
             "lost": self._lost,
-            "last": _packed(self.last),
-            "used": _packed(self.used),
+            "last": self.last and self.last.save(),
+            "used": self.used and self.used.save(),
+            "value": saved(self._value),
+            "no_news": self.no_news and self.no_news.save(),
+            "felt": dict(self._felt),
+            "unfelt": dict(self._unfelt),
             "counts": [self.accepted, self.rejected],
+            "parts": [part and part.save() for part in (self.ages, self.plausible, self.calm)],
         }
 
-    def restore(self, saved: dict[str, Any]) -> None:
+    def restore(self, plain: Mapping[str, Any]) -> None:
         """Take up the state that `save` returned."""
-        self._judge.restore(saved["judge"])
-        self._alive, self._lost = saved["alive"], saved["lost"]
-        self.last, self.used = _unpacked(saved["last"]), _unpacked(saved["used"])
-        self.accepted, self.rejected = saved["counts"]
+        self._judge.restore(plain["judge"])
+        self._alive, self._lost = plain["alive"], plain["lost"]
+        self.last, self.used = restored_reading(plain["last"]), restored_reading(plain["used"])
+        self.no_news = restored_reading(plain["no_news"])
+        self._value = restored(plain["value"])
+        self._felt, self._unfelt = dict(plain["felt"]), dict(plain["unfelt"])
+        self._feel_anew()
+        self.accepted, self.rejected = plain["counts"]
+        for part, state in zip((self.ages, self.plausible, self.calm), plain["parts"], strict=True):
+            if part is not None:
+                part.restore(state)
         self._settle()
 
 
-def _packed(reading: Reading | None) -> list[Any] | None:
-    if reading is None:
-        return None
-    return [
-        *reading[:2],
-        base64.b64encode(reading.payload).decode(),
-        *reading[3:5],
-        reading.status.value,
-        reading.reason,
-    ]
+class Calm:
+    """Spikes first, then ripples."""
+
+    __slots__ = ("_despike", "_lag")
+
+    def __init__(self, plan: SensorPlan) -> None:
+        self._despike = Despike(plan.despike) if plan.despike else None
+        self._lag = Lag(plan.lag) if plan.lag else None
+
+    def take(self, t: int, value: float) -> float:
+        """Return the calmed value."""
+        if self._despike is not None:
+            value = self._despike.take(value)
+        return value if self._lag is None else self._lag.take(t, value)
+
+    def forget(self) -> None:
+        """Begin anew."""
+        for part in (self._despike, self._lag):
+            if part is not None:
+                part.forget()
+
+    def save(self) -> list[Any]:
+        """Return the state as plain JSON values."""
+        return [part and part.save() for part in (self._despike, self._lag)]
+
+    def restore(self, plain: list[Any]) -> None:
+        """Take up the state that `save` returned."""
+        for part, state in zip((self._despike, self._lag), plain, strict=True):
+            if part is not None:
+                part.restore(state)
 
 
-def _unpacked(saved: list[Any] | None) -> Reading | None:
-    if saved is None:
-        return None
-    t, topic, payload, raw, value, status, reason = saved
-    return Reading(t, topic, base64.b64decode(payload), raw, value, Status(status), reason)
+def _has_time(plan: SensorPlan) -> bool:
+    return plan.own_time is not None or plan.senml is not None
 
 
-def convert(plan: SensorPlan, method: Method, raw: float) -> Converted:
-    """Return what a raw value, in the sensor's own unit, means, its range included. Total, for any float.
-
-    A failure that the device signals is told before the range, since it counts at once and a rejected reading does not.
-    """
-    si = raw * plan.scale
-    if not math.isfinite(si):
-        return _beyond(plan, raw)
-    found = method.convert(si)
-    bounds = plan.raw_range
-    if bounds is not None and not found.signalled and not bounds[0] <= si <= bounds[1]:
-        low, high = (bound / plan.scale for bound in bounds)
-        return Converted(None, Status.FAILURE, f"{raw:g} {plan.unit} is outside the range of {low:g} to {high:g}")
-    if found.level is not None and not abs(found.level) <= FARTHEST:
-        return _beyond(plan, raw)
-    return found
-
-
-def _beyond(plan: SensorPlan, raw: float) -> Converted:
-    return Converted(None, Status.FAILURE, f"{raw:g} {plan.unit} is outside anything that can be converted")
+def _plausible(plan: SensorPlan) -> Plausible | None:
+    looked_at = plan.fastest is not None or plan.frozen_after is not None
+    return Plausible(plan.fastest, plan.frozen_after) if looked_at else None

@@ -16,3 +16,14 @@ class Status(StrEnum):
     def usable(self) -> bool:
         """Whether rules may act on a value with this status."""
         return self not in {Status.FUNCTION_CHECK, Status.FAILURE}
+
+
+Told = tuple[Status, str | None]
+"""A status with the reason for it."""
+
+_ORDER = tuple(Status)  # from good to failure: NE 107's order of weight, reversed
+
+
+def worse(one: Told, other: Told) -> Told:
+    """Return the graver of two statuses, with its reason; of two that are alike, the first."""
+    return other if _ORDER.index(other[0]) > _ORDER.index(one[0]) else one

@@ -12,7 +12,7 @@ from gateway.measure.sensing.distance import Distance
 from gateway.measure.sensing.frequency import Frequency
 from gateway.measure.sensing.level import Level
 from gateway.measure.sensing.method import Method
-from gateway.measure.sensor import AlivePlan, SensorPlan
+from gateway.measure.sensor_plan import AlivePlan, SensorPlan
 from gateway.measure.shapes import Shape
 from gateway.measure.shapes.prism import rectangular, vertical_cylinder
 from gateway.plan import CommandPlan, PlantPlan, TankPlan

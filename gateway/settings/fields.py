@@ -6,7 +6,7 @@ from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
 from pydantic import BaseModel, BeforeValidator, ConfigDict
 
-from gateway.measure.payload import Pointer
+from gateway.measure.payloads.payload import Pointer
 from gateway.settings.units import SECOND, read_as, scale
 from rules.conditions.parse import RESERVED
 from rules.quantity import Dimension, Quantity

@@ -7,7 +7,7 @@ import json
 from collections.abc import Iterator, Mapping
 from typing import Any, NamedTuple
 
-from gateway.measure.sensor import SensorPlan
+from gateway.measure.sensor_plan import SensorPlan
 from gateway.plan import PlantPlan
 
 

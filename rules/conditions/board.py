@@ -1,10 +1,9 @@
 """Every signal as it is now: what conditions read."""
 
-import math
 from collections.abc import Iterable
 from typing import Any
 
-from rules.model import ActuatorDecl, Bounds, Fault, Signal, SignalDecl, Value
+from rules.model import ActuatorDecl, Fault, Signal, SignalDecl, Value, restored, saved
 
 
 class Board:
@@ -35,16 +34,3 @@ class Board:
         """Take up what `save` returned."""
         self.values[:] = [restored(value) for value in plain[0]]
         self.faults[:] = [Fault(fault) for fault in plain[1]]
-
-
-def saved(value: Value) -> Any:
-    """Return a value as plain JSON."""
-    return value.save() if isinstance(value, Bounds) else value
-
-
-def restored(plain: Any) -> Value:
-    """Return the value that `saved` returned as plain JSON."""
-    if not isinstance(plain, list):
-        return plain  # type: ignore[no-any-return]  # a number, a word or nothing, as JSON has it
-    low, high = plain
-    return Bounds(-math.inf if low is None else low, math.inf if high is None else high)

@@ -7,7 +7,7 @@ is evaluated every time, since a `for` inside must see each change of its part; 
 from collections.abc import Callable, Sequence
 from typing import Any, assert_never
 
-from rules.conditions.board import Board, saved
+from rules.conditions.board import Board
 from rules.conditions.terms import DIGITS, TEST, Number, compared, constant, names_in, product, spread, total
 from rules.conditions.timer import Evaluate, Timer
 from rules.conditions.tree import (
@@ -30,7 +30,7 @@ from rules.conditions.tree import (
     Sum,
     Term,
 )
-from rules.model import Bounds, Fault
+from rules.model import Bounds, Fault, saved
 from rules.truth import FALSE, TRUE, UNKNOWN, Truth, at_least
 
 Explain = Callable[[int], dict[str, Any]]

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from gateway.measure.judge import FAULTS, TABLE, Happens, Judge, State
+from gateway.measure.validity.judge import FAULTS, TABLE, Happens, Judge, State
 from rules.model import SECOND, Fault
 
 A, R, S = Happens.ACCEPTED, Happens.REJECTED, Happens.SIGNALLED

@@ -6,7 +6,7 @@ failure two good readings in a row are needed, after a start or plain silence on
 
 import pytest
 
-from gateway.measure.judge import FAULTS, Happens, Judge, State
+from gateway.measure.validity.judge import FAULTS, Happens, Judge, State
 from rules.model import SECOND, Fault
 
 # How each state is reached from a start at 0: (second, what happens). Silence counts after 15 s, 5 s are tolerated.

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from gateway.measure.payload import LONGEST, PayloadError, Pointer, read_number, read_word, shown
+from gateway.measure.payloads.payload import LONGEST, PayloadError, Pointer, read_number, read_word, shown
 
 HZ = Pointer("/hz")
 

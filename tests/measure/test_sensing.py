@@ -7,6 +7,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from gateway.measure.calibration import Line
+from gateway.measure.reading import convert
 from gateway.measure.sensing import SENSES
 from gateway.measure.sensing.capacitance import Capacitance
 from gateway.measure.sensing.current import Current
@@ -14,7 +15,7 @@ from gateway.measure.sensing.distance import Distance
 from gateway.measure.sensing.frequency import Frequency
 from gateway.measure.sensing.level import Level
 from gateway.measure.sensing.method import Method
-from gateway.measure.sensor import SensorPlan, convert
+from gateway.measure.sensor_plan import SensorPlan
 from gateway.measure.shapes import FORMS, Shape
 from gateway.measure.shapes.prism import rectangular, vertical_cylinder
 from gateway.measure.status import Status

@@ -9,11 +9,13 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from gateway.measure.calibration import Line
-from gateway.measure.payload import Pointer
+from gateway.measure.payloads.payload import Pointer
+from gateway.measure.reading import convert
 from gateway.measure.sensing.current import Current
 from gateway.measure.sensing.distance import Distance
 from gateway.measure.sensing.frequency import Frequency
-from gateway.measure.sensor import AlivePlan, Sensor, SensorPlan, convert
+from gateway.measure.sensor import Sensor
+from gateway.measure.sensor_plan import AlivePlan, SensorPlan
 from gateway.measure.status import Status
 from rules.model import SECOND, Fault, Signal
 

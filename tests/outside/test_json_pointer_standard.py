@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from gateway.measure.payload import PayloadError, Pointer
+from gateway.measure.payloads.payload import PayloadError, Pointer
 
 # RFC 6901 section 5: the document and the evaluation of every pointer of the list.
 DOCUMENT = {

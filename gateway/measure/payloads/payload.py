@@ -63,9 +63,13 @@ def read_number(payload: bytes, pointer: Pointer | None) -> float:
     """Return the number that `payload` holds; raise PayloadError with the reason when it holds none."""
     if pointer is None:
         return _plain_number(payload)
-    value = pointer.find(_document(payload))
+    return number_of(pointer.find(document_of(payload)), pointer.text)
+
+
+def number_of(value: Any, where: str) -> float:
+    """Return a number that stood in JSON; raise PayloadError when it is none, or too large."""
     if isinstance(value, bool) or not isinstance(value, int | float):
-        raise PayloadError(f"'{pointer.text}' holds {_kind(value)} where a number belongs")
+        raise PayloadError(f"'{where}' holds {_kind(value)} where a number belongs")
     try:
         number = float(value)
     except OverflowError:
@@ -76,12 +80,12 @@ def read_number(payload: bytes, pointer: Pointer | None) -> float:
 def read_word(payload: bytes, pointer: Pointer | None) -> str:
     """Return the word that `payload` holds; `1`, `"1"` and text `1` are the same word."""
     if pointer is not None:
-        return _word(pointer.find(_document(payload)), pointer.text)
+        return word_of(pointer.find(document_of(payload)), pointer.text)
     text = _text(payload).strip()
     if not text:
         raise PayloadError("it is empty")
     if text.startswith('"'):
-        return _word(_document(payload), "")
+        return word_of(document_of(payload), "")
     return text
 
 
@@ -140,7 +144,8 @@ def _object(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
 _decode = json.JSONDecoder(object_pairs_hook=_object, parse_constant=_refuse_constant).decode
 
 
-def _document(payload: bytes) -> Any:
+def document_of(payload: bytes) -> Any:
+    """Return the JSON document that `payload` is; raise PayloadError when it is none."""
     text = _text(payload)
     try:
         return _decode(text)
@@ -155,7 +160,8 @@ def _kind(value: Any) -> str:
     return kinds.get(type(value), "a number")
 
 
-def _word(value: Any, where: str) -> str:
+def word_of(value: Any, where: str) -> str:
+    """Return a word that stood in JSON; raise PayloadError where there is none."""
     match value:
         case bool():
             return "true" if value else "false"
