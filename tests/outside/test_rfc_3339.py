@@ -1,11 +1,15 @@
 """Times as RFC 3339 writes them: the examples of its section 5.8, and its rules in 5.6 and 5.7."""
 
-from datetime import datetime
+from datetime import UTC, datetime, timedelta, timezone
 
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
 from gateway.measure.payloads.own_time import FORMS, rfc_3339
 from gateway.measure.payloads.payload import PayloadError
+
+EPOCH = datetime(1970, 1, 1, tzinfo=UTC)
 
 SECTION_5_8 = [
     ("1985-04-12T23:20:50.52Z", "1985-04-12T23:20:50.520000+00:00"),
@@ -44,6 +48,13 @@ def test_what_is_no_time_is_refused(text: str) -> None:
     """With a reason."""
     with pytest.raises(PayloadError):
         rfc_3339(text)
+
+
+@given(st.datetimes(datetime(1970, 1, 2), datetime(2200, 1, 1)), st.integers(-1439, 1439))  # noqa: DTZ001 - the zone is added
+def test_any_time_in_any_zone_is_the_instant_of_the_standard_library(moment: datetime, minutes: int) -> None:
+    """Source: Python's datetime."""
+    text = moment.replace(tzinfo=timezone(timedelta(minutes=minutes))).isoformat()
+    assert rfc_3339(text) == (datetime.fromisoformat(text) - EPOCH) // timedelta(microseconds=1) * 1000
 
 
 def test_the_other_forms_are_plain_counts_since_1970() -> None:
