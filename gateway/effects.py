@@ -55,7 +55,7 @@ class RuleChange(NamedTuple):
 
 
 class Value(NamedTuple):
-    """A tank's level has been measured, or has ceased to be known. Level in m, share of the brim, volume in m3."""
+    """A tank's level has been measured, or has ceased to be known. In m, share of the brim, m3, and m3/s (net)."""
 
     t: int
     at: int
@@ -63,6 +63,7 @@ class Value(NamedTuple):
     level: float | None
     share: float | None
     volume: float | None
+    flow: float | None
     status: str
     reason: str | None
 
@@ -77,6 +78,31 @@ class SensorChange(NamedTuple):
     reason: str | None
 
 
+class Volumes(NamedTuple):
+    """What went into a tank, out of it and over its brim in a period that has ended; in m3.
+
+    `period` is hour, day, month or season; `name` says which one.
+    """
+
+    t: int
+    at: int
+    tank: str
+    period: str
+    name: str
+    into: float
+    out: float
+    spilled: float
+
+
+class PumpFlow(NamedTuple):
+    """What a pump has taken in a run that is over, as the level tells, in m3/s."""
+
+    t: int
+    at: int
+    actuator: str
+    flow: float
+
+
 class Note(NamedTuple):
     """Something that people should know."""
 
@@ -86,4 +112,4 @@ class Note(NamedTuple):
     text: str
 
 
-Effect = Command | Reason | RuleChange | Value | SensorChange | Note
+Effect = Command | Reason | RuleChange | Value | SensorChange | Volumes | PumpFlow | Note

@@ -4,18 +4,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from gateway.measure.sensor_plan import SensorPlan
-from gateway.measure.shapes import Shape
+from gateway.measure.tank import TankPlan
 from rules.model import SiteDecl
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class TankPlan:
-    """A tank whose level is measured. `brim` in m."""
-
-    name: str
-    level_sensor: str  # full name
-    shape: Shape | None = None
-    brim: float | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -39,6 +29,9 @@ class PlantPlan:
     commands: Mapping[str, CommandPlan] = field(default_factory=dict)
 
     @property
-    def source(self) -> dict[str, str]:
-        """Which sensor a tank's own quantities come from, by full name."""
-        return {f"{tank.name}.{quantity}": tank.level_sensor for tank in self.tanks for quantity in ("level", "volume")}
+    def source(self) -> dict[str, tuple[str, ...]]:
+        """Which sensors a tank's own quantities come from, by full name."""
+        signals = [decl.name for decl in self.site.signals]
+        sensors = {sensor.name for sensor in self.sensors}
+        tanks = {tank.name: (*tank.sensors, *tank.floats) for tank in self.tanks}
+        return {name: tanks.get(name.partition(".")[0], ()) for name in signals if name not in sensors}

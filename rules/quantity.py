@@ -18,6 +18,7 @@ class Dimension(Enum):
     VOLTAGE = ("a voltage", "V")
     RESISTANCE = ("a resistance", "ohm")
     CONDUCTANCE = ("a conductance", "S")
+    CONDUCTIVITY = ("a conductivity", "S/m")
     PRESSURE = ("a pressure", "Pa")
     DENSITY = ("a density", "kg/m3")
     TEMPERATURE = ("a temperature", "K")

@@ -8,7 +8,7 @@ from gateway.cli.common import AsJson, SiteArgument, named, print_json
 from gateway.errors import InputError
 from gateway.measure.reading import convert
 from gateway.measure.sensor_plan import SensorPlan
-from gateway.plan import TankPlan
+from gateway.measure.tank import TankPlan
 from gateway.settings.assemble import plant_plan
 from gateway.settings.load import load
 from gateway.settings.units import read

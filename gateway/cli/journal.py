@@ -100,7 +100,7 @@ class _Rows:
         return tuple(name for name in names if name.startswith(f"{tank}."))
 
     def _readings(self, tank: str | None) -> list[Row]:
-        chosen = [one for one in self.plant.sensors if tank is None or one.plan.name.startswith(f"{tank}.")]
+        chosen = [one for one in self.plant.meters.sensors if tank is None or one.plan.name.startswith(f"{tank}.")]
         topics = tuple({topic for one in chosen for topic in one.topics})
         rows = self.reader.messages(topics, self.span, self.newest)
         return [_of_message(row.at, row.event) for row in rows if isinstance(row.event, Message)]

@@ -2,17 +2,26 @@
 
 from typing import Any
 
-from gateway.effects import Command, Effect, Note, Reason, RuleChange, SensorChange, Value
+from gateway.effects import Command, Effect, Note, PumpFlow, Reason, RuleChange, SensorChange, Value, Volumes
 from gateway.journal.records import EffectRow
 
-_KINDS = {Command: "command", Reason: "reason", RuleChange: "rule", SensorChange: "sensor", Note: "note"}
-_SUBJECTS = {Command: "actuator", Reason: "actuator", RuleChange: "rule", SensorChange: "sensor", Note: "about"}
+_KINDS = {
+    Command: ("command", "actuator"),
+    Reason: ("reason", "actuator"),
+    RuleChange: ("rule", "rule"),
+    SensorChange: ("sensor", "sensor"),
+    Volumes: ("volumes", "tank"),
+    PumpFlow: ("pump flow", "actuator"),
+    Note: ("note", "about"),
+}
+"""The word for each effect in the journal, and the field that says what it is about."""
 
 
 def effect_row(seq: int, effect: Effect) -> EffectRow | None:
     """Return the journal's row for an effect; None for values, which the inputs give again."""
     if isinstance(effect, Value):
         return None
+    kind, about = _KINDS[type(effect)]
     data: dict[str, Any] = effect._asdict()
-    t, at, subject = data.pop("t"), data.pop("at"), data.pop(_SUBJECTS[type(effect)])
-    return EffectRow(seq, t, at, _KINDS[type(effect)], subject, data)
+    t, at, subject = data.pop("t"), data.pop("at"), data.pop(about)
+    return EffectRow(seq, t, at, kind, subject, data)

@@ -57,7 +57,7 @@ def record_of(effect: Effect, *, values: bool) -> dict[str, Any] | None:
                 "tank": effect.tank,
                 "level_m": rounded(effect.level, 6),
                 "volume_l": rounded(None if effect.volume is None else effect.volume * 1000, 3),
-                "flow_l_s": None,
+                "flow_l_s": rounded(None if effect.flow is None else effect.flow * 1000, 4),
                 "status": effect.status,
             }
         case _:

@@ -96,15 +96,27 @@ def _timer(tree: Facts, shown: Shown, offset: int) -> str:
 
 
 def _term(term: Facts, shown: Shown, depth: int) -> Iterator[str]:
-    value = term["value"]
-    shown_value = "unknown" if value is None else f"{value:.4g} {term['unit']}" if isinstance(value, float) else value
     fault = f" ({term['fault']})" if term["fault"] else ""
-    yield f"{'  ' * depth}{term['name']}: {shown_value}{fault}{_reading(term.get('reading'), shown)}"
+    head, *others = [_reading(reading, shown) for reading in term.get("readings", ())] or [""]
+    indent = "  " * depth
+    yield f"{indent}{term['name']}: {_value(term)}{fault}{head}"
+    for other in others:
+        yield f"{indent} {other}"
 
 
-def _reading(reading: Facts | None, shown: Shown) -> str:
-    if reading is None:
-        return ""
+def _value(term: Facts) -> str:
+    """Return a value for people: exactly, or what is known of it."""
+    value, unit = term["value"], term["unit"]
+    if value is None:
+        return "unknown"
+    if isinstance(value, list):
+        low, high = value
+        ends = [f"at least {low:.4g} {unit}"] if low is not None else []
+        return " and ".join([*ends, *([f"at most {high:.4g} {unit}"] if high is not None else [])])
+    return f"{value:.4g} {unit}" if isinstance(value, float) else str(value)
+
+
+def _reading(reading: Facts, shown: Shown) -> str:
     raw = reading["raw"]
     raw_shown = f"{raw:g} {reading['unit']}" if isinstance(raw, float) else raw if raw is not None else "no value"
     reason = f", {reading['reason']}" if reading["reason"] else ""

@@ -1,31 +1,29 @@
 """From settings to the plain descriptions that the plant and the link are built from."""
 
 import re
-from collections.abc import Callable
-from typing import TypeVar
 
-from gateway.measure.calibration import Line
+from gateway.measure.calibration import Covered
+from gateway.measure.combine import Take as CombineBy
+from gateway.measure.payloads.own_time import OwnTime
 from gateway.measure.sensing import SENSES
-from gateway.measure.sensing.capacitance import Capacitance
-from gateway.measure.sensing.current import Current
-from gateway.measure.sensing.distance import Distance
-from gateway.measure.sensing.frequency import Frequency
-from gateway.measure.sensing.level import Level
-from gateway.measure.sensing.method import Method
 from gateway.measure.sensor_plan import AlivePlan, SensorPlan
-from gateway.measure.shapes import Shape
-from gateway.measure.shapes.prism import rectangular, vertical_cylinder
-from gateway.plan import CommandPlan, PlantPlan, TankPlan
+from gateway.measure.tank import TankPlan
+from gateway.measure.trend.totals import Calendar
+from gateway.meters import QUANTITIES
+from gateway.plan import CommandPlan, PlantPlan
 from gateway.settings import models
+from gateway.settings.calendar import calendar_of
 from gateway.settings.names import Names, TankScope, actuator_of, full, parts, signal_of
-from gateway.settings.units import SECOND, read, scale
+from gateway.settings.sensing import Surroundings, method_of
+from gateway.settings.sensor_models import Sensor, Take
+from gateway.settings.shaping import shape_of
+from gateway.settings.units import SECOND, linear, read
 from rules.conditions.check import check
 from rules.conditions.parse import parse
+from rules.conditions.terms import names_of
 from rules.conditions.tree import Condition
 from rules.model import ActuatorDecl, OnUnknown, Rank, Rhythm, RuleDecl, SignalDecl, SiteDecl
 from rules.quantity import Dimension
-
-T = TypeVar("T")
 
 ALIVE_WORDS = {"yes": True, "no": False}
 
@@ -33,14 +31,13 @@ ALIVE_WORDS = {"yes": True, "no": False}
 def plant_plan(site: models.Site) -> PlantPlan:
     """Return everything that decides, from settings that have been checked."""
     names = Names(site)
+    calendar = calendar_of(site.file.timezone)
     return PlantPlan(
         site=declare(site, names),
         sensors=tuple(
-            sensor_plan(tank, name, sensor, site.tanks.get(tank or ""))
-            for tank, part in parts(site)
-            for name, sensor in part.sensors.items()
+            sensor_plan(site, tank, name, sensor) for tank, part in parts(site) for name, sensor in part.sensors.items()
         ),
-        tanks=tuple(tank_plan(tank) for tank in site.tanks.values() if tank.level is not None),
+        tanks=tuple(tank_plan(tank, calendar) for tank in site.tanks.values() if tank.level is not None),
         commands={
             full(tank, name): command_plan(actuator)
             for tank, part in parts(site)
@@ -51,16 +48,19 @@ def plant_plan(site: models.Site) -> PlantPlan:
 
 def declare(site: models.Site, names: Names) -> SiteDecl:
     """Return the site as the engine sees it: signals, actuators and rules in file order."""
-    signals: list[SignalDecl] = []
     actuators: list[ActuatorDecl] = []
     rules: list[RuleDecl] = []
     for tank, part in parts(site):
-        if tank:
-            measured = (names.meanings.get(full(tank, word)) for word in ("level", "volume"))
-            signals += [decl for decl in measured if isinstance(decl, SignalDecl)]
-        signals += [signal_of(full(tank, name), sensor) for name, sensor in part.sensors.items()]
         actuators += [actuator_of(full(tank, name), actuator) for name, actuator in part.actuators.items()]
         rules += [rule_decl(tank, name, rule, names) for name, rule in part.rules.items()]
+    asked = {name for rule in rules for name in names_of(rule.from_) | names_of(rule.until)}
+    signals: list[SignalDecl] = []
+    for tank, part in parts(site):
+        for quantity in QUANTITIES if tank else ():
+            decl = names.meanings.get(full(tank, quantity))
+            if isinstance(decl, SignalDecl) and (quantity in {"level", "volume"} or decl.name in asked):
+                signals.append(decl)
+        signals += [signal_of(tank, name, sensor) for name, sensor in part.sensors.items()]
     return SiteDecl(
         signals=tuple(signals),
         actuators=tuple(actuators),
@@ -129,37 +129,72 @@ def choice_of(text: str) -> OnUnknown | Rhythm:
 # ---- sensors and tanks --------------------------------------------------------------------------------------
 
 
-def sensor_plan(tank: str | None, name: str, sensor: models.Sensor, owner: models.TankFile | None) -> SensorPlan:
+def sensor_plan(site: models.Site, tank: str | None, name: str, sensor: Sensor) -> SensorPlan:
     """Return how one sensor is measured; raise ValueError for what does not fit."""
     every = sensor.expect_every
     contact = sensor.senses == "contact"
     unit = sensor.unit or SENSES[sensor.senses].unit
-    factor, _ = scale(unit) if unit else (1.0, Dimension.NUMBER)
+    scale, zero, _ = linear(unit) if unit else (1.0, 0.0, Dimension.NUMBER)
+    built = None if contact else method_of(sensor, surroundings(site, tank))
+    calibration = sensor.calibration
     return SensorPlan(
         name=full(tank, name),
         topic=sensor.topic,
         pointer=sensor.field,
-        method=None if contact else method_of(sensor, owner),
-        scale=factor,
+        senml=sensor.senml,
+        own_time=None if sensor.time is None else OwnTime(sensor.time.field, sensor.time.as_),
+        buffers=sensor.buffers,
+        method=built and built.method,
+        scale=scale,
+        zero=zero,
         unit=unit,
         words=_words(sensor) if contact else {},
         raw_range=_range(sensor),
+        covers=Covered(*calibration.covers) if calibration and calibration.covers else None,
+        fastest=sensor.fastest,
+        frozen_after=sensor.frozen_after,
+        despike=sensor.despike or 0,
+        lag=sensor.lag or 0,
         silent_after=sensor.silent_after if sensor.silent_after is not None else every and every * 3,
         tolerate=sensor.tolerate if sensor.tolerate is not None else every or 0,
         good_again=sensor.good_again or (1 if contact else 2),
         alive=_alive(sensor),
+        feels=built.feels if built else {},
+        method_at=built and built.method_at,
     )
 
 
-def _words(sensor: models.Sensor) -> dict[str, str]:
+def surroundings(site: models.Site, tank: str | None) -> Surroundings:
+    """Return what a sensor's method may ask of its tank and of the site."""
+    owner = site.tanks.get(tank or "")
+
+    def sensor(name: str, sense: str) -> str:
+        own = None if "." in name else owner and owner.sensors.get(name)
+        where, _, word = name.rpartition(".")
+        other = site.tanks[where].sensors.get(word) if where in site.tanks else site.file.sensors.get(name)
+        found = own or other
+        if found is None or found.senses != sense or (sense == "pressure" and (own or where)):
+            at_site_level = " at site level" if sense == "pressure" else ""
+            raise ValueError(f"`{name}` is no sensor{at_site_level} that senses {sense}")
+        return full(tank, name) if own else name
+
+    return Surroundings(
+        brim=owner.brim if owner else None,
+        shape=shape_of(owner.shape) if owner and owner.shape else None,
+        in_a_tank=owner is not None,
+        sensor=sensor,
+    )
+
+
+def _words(sensor: Sensor) -> dict[str, str]:
     return {payload: word for word, payload in (sensor.payloads or {"wet": "1", "dry": "0"}).items()}
 
 
-def _range(sensor: models.Sensor) -> tuple[float, float] | None:
+def _range(sensor: Sensor) -> tuple[float, float] | None:
     return None if sensor.range is None else (sensor.range[0].value, sensor.range[1].value)
 
 
-def _alive(sensor: models.Sensor) -> AlivePlan | None:
+def _alive(sensor: Sensor) -> AlivePlan | None:
     if sensor.on_change is None:
         return None
     alive = sensor.on_change.alive
@@ -167,66 +202,42 @@ def _alive(sensor: models.Sensor) -> AlivePlan | None:
     return AlivePlan(topic=alive.topic, pointer=alive.field, words=words)
 
 
-def method_of(sensor: models.Sensor, owner: models.TankFile | None) -> Method:
-    """Return how raw values become levels; raise ValueError, with a sentence, when something for it is missing."""
-    match sensor.senses:
-        case "level":
-            return _level(sensor, owner)
-        case "distance":
-            return Distance(_needed(sensor.mounted_at, "mounted_at"))
-        case "current":
-            low, high = _needed(sensor.span, "span")
-            return Current(low.value, high.value, sensor.mounted_at)
-        case "capacitance":
-            return Capacitance(_line(sensor, lambda raw: raw))
-        case "frequency":
-            return Frequency(_line(sensor, lambda raw: 1 / raw))
-        case other:
-            raise ValueError(f"`{other}` is not yet supported")
-
-
-def _needed(value: T | None, key: str) -> T:
-    if value is None:
-        raise ValueError(f"`{key}` is missing; this way to sense needs it")
-    return value
-
-
-def _line(sensor: models.Sensor, linear: Callable[[float], float]) -> Line:
-    """Return the line through the two points of a calibration, in the quantity in which the method is linear."""
-    (raw_0, level_0), (raw_1, level_1) = _needed(sensor.calibration, "calibration").points
-    wanted = SENSES[sensor.senses].raw
-    for raw in (raw_0, raw_1):
-        if raw.dimension not in wanted:
-            raise ValueError(f"a point of the calibration has {raw.dimension.words} where {wanted[0].words} belongs")
-        if not raw.value > 0:
-            raise ValueError("a raw value of the calibration is more than nothing")
-    return Line(linear(raw_0.value), level_0, linear(raw_1.value), level_1)
-
-
-def _level(sensor: models.Sensor, owner: models.TankFile | None) -> Level:
-    """Return the method of a device that sends the level itself: as a length, a share of the brim, or a volume."""
-    line = None if sensor.calibration is None else _line(sensor, lambda raw: raw)
-    _, dimension = scale(sensor.unit or "m")
-    if dimension is Dimension.SHARE:
-        brim = _needed(owner.brim if owner else None, "the tank's brim")
-        return Level(lambda share: share * brim, lambda level: level / brim, line)
-    if dimension is Dimension.VOLUME:
-        shape = shape_of(_needed(owner.shape if owner else None, "the tank's shape"))
-        return Level(shape.level, shape.volume, line)
-    return Level(line=line)
-
-
-def tank_plan(tank: models.TankFile) -> TankPlan:
+def tank_plan(tank: models.TankFile, calendar: Calendar) -> TankPlan:
     """Return a tank whose level is measured."""
-    shape = None if tank.shape is None else shape_of(tank.shape)
-    return TankPlan(name=tank.tank, level_sensor=full(tank.tank, tank.level or ""), shape=shape, brim=tank.brim)
+    name, level = tank.tank, tank.level
+    sensors = level.of if isinstance(level, Take) else [level or ""]
+    return TankPlan(
+        name=name,
+        sensors=tuple(full(name, sensor) for sensor in sensors),
+        take=_combine_by(level) if isinstance(level, Take) else CombineBy(way="first", need=1),
+        floats={
+            full(name, one): sensor.mounted_at
+            for one, sensor in tank.sensors.items()
+            if sensor.mounted_at is not None and is_float(sensor)
+        },
+        shape=None if tank.shape is None else shape_of(tank.shape),
+        brim=tank.brim,
+        suction=tank.suction,
+        pumps={
+            full(name, one): actuator.rated.flow
+            for one, actuator in tank.actuators.items()
+            if actuator.rated is not None and actuator.rated.flow is not None
+        },
+        rise_over=tank.rise_over,
+        calendar=calendar,
+    )
 
 
-def shape_of(shape: models.Shape) -> Shape:
-    """Return the inside of a tank."""
-    if shape.form == "rectangular":
-        return rectangular(shape.length or 0.0, shape.width or 0.0, shape.height)
-    return vertical_cylinder(shape.diameter or 0.0, shape.height)
+def _combine_by(take: Take) -> CombineBy:
+    """Return how sensors are combined; of three and more, their middle needs two, anything else one."""
+    usual = 2 if take.take == "middle" and len(take.of) > 2 else 1
+    return CombineBy(way=take.take, need=take.need or usual, agree_within=take.agree_within)
+
+
+def is_float(sensor: Sensor) -> bool:
+    """Return whether a sensor is a contact that hangs at a height and says wet or dry."""
+    words = set(sensor.payloads or ("wet", "dry"))
+    return sensor.senses == "contact" and sensor.mounted_at is not None and words == {"wet", "dry"}
 
 
 def command_plan(actuator: models.Actuator) -> CommandPlan:

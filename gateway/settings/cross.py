@@ -6,18 +6,22 @@ Each check yields complaints with their place; none stops at the first.
 from collections.abc import Iterator, Mapping
 
 from gateway.measure.sensing import ONLY_SOME_USE, SENSES
-from gateway.settings.assemble import ALIVE_WORDS, choice_of, condition_of, demand_of, method_of
+from gateway.settings.assemble import ALIVE_WORDS, choice_of, condition_of, demand_of, surroundings
 from gateway.settings.complaint import Complaint
 from gateway.settings.load import SITE_FILE
-from gateway.settings.models import Actuator, Common, Rule, Sensor, Site, TankFile
+from gateway.settings.models import Actuator, Common, Rule, Site, TankFile
 from gateway.settings.names import Names, TankScope, full, parts
-from gateway.settings.units import scale
+from gateway.settings.sensing import method_of
+from gateway.settings.sensor_models import Sensor, Take
+from gateway.settings.shaping import shape_of
+from gateway.settings.units import SECOND, linear
 from gateway.settings.yaml_reader import Node, place_within
 from rules.conditions.errors import ConditionError
 from rules.quantity import Dimension
 
 Path = tuple[str | int, ...]
 
+SHORTEST_RISE = 10 * SECOND
 LATER_IN_PAYLOADS = ("{seq}", "{until}")  # what a device that checks its commands will be told
 
 
@@ -51,10 +55,15 @@ def cross_check(site: Site, nodes: Mapping[str, Node]) -> list[Complaint]:
     of_tank = {place.node.value["tank"].value: place for file, place in by_file.items() if file != SITE_FILE}
     places = [by_file[SITE_FILE], *(of_tank[tank] for tank in site.tanks)]
     complaints: list[Complaint] = []
+    sound = True
     for (_, part), place in zip(parts(site), places, strict=True):
         if isinstance(part, TankFile):
-            complaints += _tank(part, place)
-        complaints += _sensors(part, place)
+            slips = list(_tank(part, place))
+            complaints += slips
+            sound = sound and not slips
+    for (tank, part), place in zip(parts(site), places, strict=True):
+        if sound:  # a method may ask for its tank's shape and brim
+            complaints += _sensors(site, tank, part, place)
         complaints += _actuators(part, place)
     complaints += _topics(site, places)
     complaints += _names(site, places)
@@ -63,27 +72,53 @@ def cross_check(site: Site, nodes: Mapping[str, Node]) -> list[Complaint]:
 
 
 def _tank(tank: TankFile, place: _Place) -> Iterator[Complaint]:
-    if tank.shape is not None and tank.brim is not None and tank.brim > tank.shape.height:
-        yield place.say(("brim",), f"the brim is above the tank's height of {tank.shape.height:g} m")
+    if tank.shape is not None:
+        try:
+            height = shape_of(tank.shape).height
+        except ValueError as problem:
+            yield place.say(("shape",), str(problem))
+            return
+        if tank.brim is not None and tank.brim > height:
+            yield place.say(("brim",), f"the brim is above the tank's height of {height:g} m")
     if tank.brim is not None and tank.suction is not None and tank.suction >= tank.brim:
         yield place.say(("suction",), f"the suction level is not below the brim of {tank.brim:g} m")
-    if tank.level is not None and tank.level not in tank.sensors:
-        known = ", ".join(tank.sensors) or "none"
-        yield place.say(("level",), f"`{tank.level}` is no sensor of this tank; known: {known}")
-    elif tank.level is not None and tank.sensors[tank.level].senses == "contact":
-        yield place.say(("level",), f"`{tank.level}` is a contact and gives no level")
+    if isinstance(tank.level, Take):
+        yield from _take(tank, tank.level, place)
+    elif tank.level is not None and (slip := _no_level(tank, tank.level)):
+        yield place.say(("level",), slip)
+    if tank.rise_over < SHORTEST_RISE:
+        yield place.say(("rise_over",), f"a rise is told over {SHORTEST_RISE // SECOND} s or more")
     for name in set(tank.sensors) & set(tank.actuators):
         yield place.say_key(("actuators", name), f"`{name}` is a sensor of this tank already")
+
+
+def _no_level(tank: TankFile, name: str) -> str | None:
+    """Return why a sensor gives no level, or None."""
+    if name not in tank.sensors:
+        return f"`{name}` is no sensor of this tank; known: {', '.join(tank.sensors) or 'none'}"
+    senses = tank.sensors[name].senses
+    return f"`{name}` is a {senses} and gives no level" if senses in {"contact", "temperature"} else None
+
+
+def _take(tank: TankFile, take: Take, place: _Place) -> Iterator[Complaint]:
+    for index, name in enumerate(take.of):
+        if slip := _no_level(tank, name):
+            yield place.say(("level", "of", index), slip)
+        elif name in take.of[:index]:
+            yield place.say(("level", "of", index), f"`{name}` stands here twice")
+    if take.need is not None and take.need > len(take.of):
+        yield place.say(("level", "need"), f"there are {len(take.of)} sensors; {take.need} of them can never be usable")
 
 
 # ---- sensors ------------------------------------------------------------------------------------------------
 
 
-def _sensors(part: Common, place: _Place) -> Iterator[Complaint]:
-    owner = part if isinstance(part, TankFile) else None
+def _sensors(site: Site, tank: str | None, part: Common, place: _Place) -> Iterator[Complaint]:
+    around = surroundings(site, tank)
     for name, sensor in part.sensors.items():
         path: Path = ("sensors", name)
         yield from _timing(sensor, place, path)
+        yield from _payload(sensor, place, path)
         yield from (slips := [*_unused(sensor, place, path), *_bounds(sensor, place, path)])
         if sensor.senses == "contact":
             yield from _contact(sensor, place, path)
@@ -92,9 +127,23 @@ def _sensors(part: Common, place: _Place) -> Iterator[Complaint]:
         if slips or misfits:
             continue  # what the method would say of them is said already
         try:
-            method_of(sensor, owner)
+            method_of(sensor, around)
         except ValueError as problem:
             yield place.say((*path, "senses"), str(problem))
+
+
+def _payload(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
+    """Complain of ways to read a payload that do not go together."""
+    if sensor.senml is not None:
+        for key in ("field", "time"):
+            if getattr(sensor, key) is not None:
+                yield place.say_key((*path, key), f"a SenML pack has its own order; `{key}` has no place in it")
+    elif sensor.time is not None and sensor.field is None:
+        yield place.say((*path, "time"), "`field` is missing: where beside its time the value stands")
+    if sensor.buffers and sensor.time is None and sensor.senml is None:
+        yield place.say((*path, "buffers"), "a device that stores its readings must send their `time`")
+    if sensor.buffers and sensor.on_change is not None:
+        yield place.say((*path, "buffers"), "a sensor that sends only changes cannot store them")
 
 
 def _timing(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
@@ -128,11 +177,15 @@ def _contact(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
 def _unit_fits(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
     wanted = SENSES[sensor.senses].raw
     kinds = " or ".join(dimension.words for dimension in wanted)
-    if sensor.unit is not None and scale(sensor.unit)[1] not in wanted:
+    if sensor.unit is not None and linear(sensor.unit)[2] not in wanted:
         yield place.say((*path, "unit"), f"`{sensor.unit}` is no unit of {kinds}")
     for index, bound in enumerate(sensor.range or ()):
         if bound.dimension not in wanted:
             yield place.say((*path, "range", index), f"this is {bound.dimension.words}; expected {kinds}")
+
+
+_LENGTHS, _PRESSURES = {Dimension.LENGTH}, {Dimension.PRESSURE}
+_SPANS = dict.fromkeys(SENSES, (_LENGTHS,)) | {"current": (_LENGTHS, _PRESSURES)}
 
 
 def _bounds(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
@@ -144,8 +197,8 @@ def _bounds(sensor: Sensor, place: _Place, path: Path) -> Iterator[Complaint]:
             yield place.say((*path, key), "expected two values: `[low, high]`")
         elif key == "range" and not pair[0].value < pair[1].value:
             yield place.say((*path, key), "the first value is the lower one")
-        elif key == "span" and any(value.dimension is not Dimension.LENGTH for value in pair):
-            yield place.say((*path, key), "a span that is not a length is not yet supported")
+        elif key == "span" and {value.dimension for value in pair} not in _SPANS[sensor.senses]:
+            yield place.say((*path, key), "expected two lengths, or of a `current` two pressures")
         elif pair[0].value == pair[1].value:
             yield place.say((*path, key), "the two values are the same")
 

@@ -1,13 +1,14 @@
 """The kinds of values that settings hold: each reads what a user wrote into SI units, or says what is wrong with it."""
 
 import re
+from collections.abc import Mapping
 from typing import Annotated, Any
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
 from pydantic import BaseModel, BeforeValidator, ConfigDict
 
 from gateway.measure.payloads.payload import Pointer
-from gateway.settings.units import SECOND, read_as, scale
+from gateway.settings.units import SECOND, linear, read_as
 from rules.conditions.parse import RESERVED
 from rules.quantity import Dimension, Quantity
 
@@ -22,8 +23,23 @@ class Part(BaseModel):
     model_config = ConfigDict(extra="forbid", strict=True, frozen=True, arbitrary_types_allowed=True)
 
 
-def _dimension(*wanted: Dimension) -> BeforeValidator:
+def of(*wanted: Dimension) -> BeforeValidator:
+    """Return a check that a value is of one of these dimensions; it reads as a number in SI units."""
     return BeforeValidator(lambda value: read_as(value, *wanted).value)
+
+
+def known(kind: str, table: Mapping[str, bool]) -> BeforeValidator:
+    """Return a check that a word is in a table, and supported yet."""
+
+    def validate(value: object) -> str:
+        word = str(value)
+        if word not in table:
+            raise ValueError(f"`{word}` is no {kind}; expected one of {', '.join(table)}")
+        if not table[word]:
+            raise ValueError(f"`{word}` is not yet supported")
+        return word
+
+    return BeforeValidator(validate)
 
 
 def _size(value: object) -> object:
@@ -48,6 +64,15 @@ def name(value: object) -> str:
         raise ValueError(f"`{value}` is not a name; a name has letters, digits and `-`, and begins with a letter")
     if value.lower() in RESERVED:
         raise ValueError(f"`{value}` is a word of the condition language and cannot be a name")
+    return value
+
+
+def _dotted(value: object) -> str:
+    """Return the name of something in this tank, of the site, or `tank.name`."""
+    if not isinstance(value, str) or not 1 <= len(parts := value.split(".")) <= 2:
+        raise ValueError(f"`{value}` is not a name; expected one such as `air` or `tank.air`")
+    for part in parts:
+        name(part)
     return value
 
 
@@ -85,7 +110,7 @@ def _pointer(value: object) -> Pointer:
 def _unit(value: object) -> str:
     if not isinstance(value, str):
         raise ValueError("expected a unit such as `Hz`")
-    scale(value)
+    linear(value)
     return value
 
 
@@ -121,11 +146,12 @@ def _any_quantity(value: object) -> Quantity:
     return read_as(value, *(dimension for dimension in Dimension if dimension is not Dimension.NUMBER))
 
 
-Length = Annotated[float, _dimension(Dimension.LENGTH)]
+Length = Annotated[float, of(Dimension.LENGTH)]
 Size = Annotated[Length, BeforeValidator(_size)]
 Duration = Annotated[int, BeforeValidator(_duration)]
 AnyQuantity = Annotated[Quantity, BeforeValidator(_any_quantity)]
 Name = Annotated[str, BeforeValidator(name)]
+Dotted = Annotated[str, BeforeValidator(_dotted)]
 Word = Annotated[str, BeforeValidator(_word)]
 Topic = Annotated[str, BeforeValidator(_topic)]
 PointerText = Annotated[Pointer, BeforeValidator(_pointer)]

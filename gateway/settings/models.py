@@ -9,40 +9,24 @@ from urllib.parse import urlsplit
 
 from pydantic import BeforeValidator, Field, model_validator
 
-from gateway.measure.sensing import SENSES
-from gateway.measure.shapes import FORMS
 from gateway.settings.fields import (
-    AnyQuantity,
     Duration,
     Length,
     Name,
     Part,
     Pattern,
     Payloads,
-    PointerText,
     Size,
     Text,
     Topic,
-    Unit,
     Word,
     Zone,
+    of,
 )
+from gateway.settings.sensor_models import Sensor, Take
+from gateway.settings.shape_models import Shape
 from gateway.settings.units import SECOND, read_as
 from rules.quantity import Dimension
-
-
-def _known(kind: str, table: dict[str, bool]) -> BeforeValidator:
-    """Return a check that a word is in a table, and supported yet."""
-
-    def validate(value: object) -> str:
-        word = str(value)
-        if word not in table:
-            raise ValueError(f"`{word}` is no {kind}; expected one of {', '.join(table)}")
-        if not table[word]:
-            raise ValueError(f"`{word}` is not yet supported")
-        return word
-
-    return BeforeValidator(validate)
 
 
 class Secret(Part):
@@ -112,84 +96,6 @@ class Journal(Part):
     file: Text = "var/journal.db"
 
 
-class Shape(Part):
-    """The inside of a tank. Lengths in m."""
-
-    LATER: ClassVar[frozenset[str]] = frozenset({"bottom", "ends", "table", "top"})
-
-    form: Annotated[str, _known("form", FORMS)]
-    diameter: Size | None = None
-    length: Size | None = None
-    width: Size | None = None
-    height: Size
-
-    @model_validator(mode="after")
-    def _measures(self) -> "Shape":
-        needed = {"vertical cylinder": {"diameter"}, "rectangular": {"length", "width"}}[self.form]
-        given = {key for key in ("diameter", "length", "width") if getattr(self, key) is not None}
-        if needed != given:
-            raise ValueError(f"a {self.form} has {', '.join(sorted(needed))} and height")
-        return self
-
-
-class Calibration(Part):
-    """Pairs of what the sensor said and the level in m."""
-
-    LATER: ClassVar[frozenset[str]] = frozenset({"fit", "covers"})
-
-    points: list[tuple[AnyQuantity, Length]]
-
-    @model_validator(mode="before")
-    @classmethod
-    def _pairs(cls, value: Any) -> Any:
-        """Take each pair as a tuple, since strict reading tells lists and tuples apart."""
-        if isinstance(value, dict) and isinstance(value.get("points"), list):
-            points = value["points"]
-            if len(points) != 2:
-                count = "more than two points are not yet supported" if len(points) > 2 else "two points are needed"
-                raise ValueError(f"{count}; expected `[[raw, level], [raw, level]]`")
-            return {**value, "points": [tuple(p) if isinstance(p, list) else p for p in points]}
-        return value
-
-
-class Alive(Part):
-    """Where a sensor that sends only changes says whether it is alive."""
-
-    topic: Topic
-    field: PointerText | None = None
-    payloads: Payloads = Field(default_factory=lambda: {"yes": "1", "no": "0"})
-
-
-class OnChange(Part):
-    """A sensor that sends only changes."""
-
-    alive: Alive
-
-
-class Sensor(Part):
-    """One source of raw readings on one topic."""
-
-    LATER: ClassVar[frozenset[str]] = frozenset(
-        {"fastest", "frozen_after", "despike", "lag", "oscillator", "probe", "compensate", "charging", "excitation"}
-        | {"density", "medium", "temperature", "barometer", "blanking", "time", "buffers", "resistor"}
-    )
-
-    topic: Topic
-    field: PointerText | None = None
-    senses: Annotated[str, _known("way to sense", {name: sense.supported for name, sense in SENSES.items()})]
-    unit: Unit | None = None
-    calibration: Calibration | None = None
-    mounted_at: Length | None = None
-    span: list[AnyQuantity] | None = None
-    payloads: Payloads | None = None
-    on_change: OnChange | None = None
-    expect_every: Duration | None = None
-    silent_after: Duration | None = None
-    tolerate: Duration | None = None
-    good_again: int | None = Field(default=None, ge=1, le=100)
-    range: list[AnyQuantity] | None = None
-
-
 def _expiry(value: object) -> object:
     if read_as(value, Dimension.TIME).value < 1:  # brokers count whole seconds
         raise ValueError(f"`{value}` is too short for a command to arrive; expected `1 s` or more")
@@ -208,17 +114,25 @@ class Command(Part):
     expiry: Annotated[Duration, BeforeValidator(_expiry)] = 10 * SECOND
 
 
+class Rated(Part):
+    """What a pump takes from its tank while it runs, and the power that it draws."""
+
+    flow: Annotated[float, of(Dimension.FLOW)] | None = None
+    power: Annotated[float, of(Dimension.POWER)] | None = None
+
+
 class Actuator(Part):
     """A pump, a valve, an appliance: something that is put into states."""
 
     LATER: ClassVar[frozenset[str]] = frozenset(
-        {"feedback", "limits", "proves", "will", "rated", "exercise", "on_stop", "locked"}
+        {"feedback", "limits", "proves", "will", "exercise", "on_stop", "locked"}
     )
 
     states: list[Word] = Field(default_factory=lambda: ["off", "on"], min_length=2)
     rest: Word | None = None
     safe: Word | None = None
     prefer: Word | None = None
+    rated: Rated | None = None
     command: Command
 
 
@@ -255,12 +169,6 @@ class Common(Part):
     rules: dict[str, Rule] = Field(default_factory=dict)
 
 
-def _one_sensor(value: Any) -> Any:
-    if isinstance(value, dict) and "take" in value:
-        raise ValueError("`take` is not yet supported; name one sensor")
-    return value
-
-
 class TankFile(Common):
     """One tank."""
 
@@ -271,7 +179,8 @@ class TankFile(Common):
     shape: Shape | None = None
     brim: Size | None = None
     suction: Length | None = None
-    level: Annotated[Name, BeforeValidator(_one_sensor)] | None = None
+    level: Name | Take | None = None
+    rise_over: Duration = 300 * SECOND
 
 
 class SiteFile(Common):

@@ -2,7 +2,10 @@
 
 from collections.abc import Iterable
 
-from gateway.settings.models import Actuator, Common, Sensor, Site
+from gateway.settings.models import Actuator, Common, Site
+from gateway.settings.sensing import dimension_of
+from gateway.settings.sensor_models import Sensor
+from gateway.settings.shaping import shape_of
 from rules.conditions.check import Constant, Meaning
 from rules.model import ActuatorDecl, SignalDecl
 from rules.quantity import Dimension, Quantity
@@ -13,11 +16,11 @@ def full(tank: str | None, name: str) -> str:
     return f"{tank}.{name}" if tank else name
 
 
-def signal_of(name: str, sensor: Sensor) -> SignalDecl:
+def signal_of(tank: str | None, name: str, sensor: Sensor) -> SignalDecl:
     """Return a sensor as the engine sees it."""
     if sensor.senses == "contact":
-        return SignalDecl(name=name, words=tuple(sensor.payloads or ("wet", "dry")))
-    return SignalDecl(name=name, dimension=Dimension.LENGTH)
+        return SignalDecl(name=full(tank, name), words=tuple(sensor.payloads or ("wet", "dry")))
+    return SignalDecl(name=full(tank, name), dimension=dimension_of(sensor, in_a_tank=tank is not None))
 
 
 def actuator_of(name: str, actuator: Actuator) -> ActuatorDecl:
@@ -41,31 +44,37 @@ class Names:
         self.scales: dict[str, Quantity] = {}
         for tank, part in parts(site):
             for name, sensor in part.sensors.items():
-                self.meanings[full(tank, name)] = signal_of(full(tank, name), sensor)
+                self.meanings[full(tank, name)] = signal_of(tank, name, sensor)
             for name, actuator in part.actuators.items():
                 self.meanings[full(tank, name)] = actuator_of(full(tank, name), actuator)
-        for name, one in site.tanks.items():
-            self._add_tank(site, name, one.level)
+        for name in site.tanks:
+            self._add_tank(site, name)
 
-    def _add_tank(self, site: Site, tank: str, level: str | None) -> None:
+    def _add_tank(self, site: Site, tank: str) -> None:
         one = site.tanks[tank]
         for word, value in (("brim", one.brim), ("suction", one.suction)):
             if value is not None:
                 name = full(tank, word)
                 self.meanings[name] = Constant(name, Quantity(value, Dimension.LENGTH))
-        if level is None:
+        if one.level is None:
             return
-        self._add_quantity(full(tank, "level"), Dimension.LENGTH, one.brim)
-        for name in one.sensors:
-            if one.brim is not None:
+        for name, sensor in one.sensors.items():
+            if one.brim is not None and dimension_of(sensor, in_a_tank=True) is Dimension.LENGTH:
                 self.scales[full(tank, name)] = Quantity(one.brim, Dimension.LENGTH)
+        self._add_quantity(full(tank, "level"), Dimension.LENGTH, one.brim)
+        self._add_quantity(full(tank, "rise"), Dimension.SPEED)
+        if one.brim is not None:
+            self._add_quantity(full(tank, "time_to_brim"), Dimension.TIME)
+        if one.suction is not None:
+            self._add_quantity(full(tank, "time_to_suction"), Dimension.TIME)
         if one.shape is not None:
-            from gateway.settings.assemble import shape_of  # noqa: PLC0415 - assemble builds on these names
-
             brim = None if one.brim is None else shape_of(one.shape).volume(one.brim)
             self._add_quantity(full(tank, "volume"), Dimension.VOLUME, brim)
+            self._add_quantity(full(tank, "flow"), Dimension.FLOW)
+            if brim is not None:
+                self._add_quantity(full(tank, "ullage"), Dimension.VOLUME, brim)
 
-    def _add_quantity(self, name: str, dimension: Dimension, scale: float | None) -> None:
+    def _add_quantity(self, name: str, dimension: Dimension, scale: float | None = None) -> None:
         self.meanings[name] = SignalDecl(name=name, dimension=dimension)
         if scale is not None:
             self.scales[name] = Quantity(scale, dimension)

@@ -99,18 +99,22 @@ def read_as(value: object, *wanted: Dimension) -> Quantity:
     example = _EXAMPLES.get(wanted[0], f"1 {wanted[0].unit}")
     if isinstance(value, bool) or not isinstance(value, int | float | str):
         raise ValueError(f"expected {kinds} such as `{example}`")
-    if not isinstance(value, str):
+    if not isinstance(value, str) and Dimension.NUMBER not in wanted:
         raise ValueError(f"`{value}` needs a unit; expected {kinds} such as `{example}`")
-    quantity = read(value)
-    if quantity.dimension is Dimension.NUMBER:
+    quantity = read(str(value))
+    if quantity.dimension is Dimension.NUMBER and Dimension.NUMBER not in wanted:
         raise ValueError(f"`{value}` needs a unit; expected {kinds} such as `{example}`")
     if quantity.dimension not in wanted:
         raise ValueError(f"`{value}` is {quantity.dimension.words}; expected {kinds} such as `{example}`")
     return quantity
 
 
-def scale(unit: str) -> tuple[float, Dimension]:
-    """Return how many SI units one `unit` is, and of which dimension; raise ValueError for what is no unit."""
+def linear(unit: str) -> tuple[float, float, Dimension]:
+    """Return the SI value of one `unit` over nothing of it, that of nothing, and the dimension.
+
+    Only temperatures have a nothing that is not 0. Raises ValueError for what is no unit.
+    """
     if unit in _OFFSET:
-        raise ValueError(f"`{unit}` has a zero of its own and cannot be a scale")
-    return _unit(unit)
+        return *_OFFSET[unit], Dimension.TEMPERATURE
+    factor, dimension = _unit(unit)
+    return factor, 0.0, dimension

@@ -9,7 +9,6 @@ from collections.abc import Callable, Iterable
 from dataclasses import dataclass, replace
 from typing import Protocol, assert_never
 
-from rules.conditions import later
 from rules.conditions.errors import ConditionError
 from rules.conditions.terms import constant
 from rules.conditions.tree import (
@@ -98,8 +97,6 @@ class _Checker:
 
     def meaning(self, name: str, column: int) -> Meaning:
         """Return what a name stands for."""
-        if name.rpartition(".")[2] in later.NAMES:
-            raise ConditionError(f"`{name}` is not yet supported", column, found=name)
         meaning = self.scope.resolve(name)
         if meaning is None:
             raise self.unknown(name, column)

@@ -1,13 +1,11 @@
 """Words and forms that have their place in the language and arrive in a later version.
 
-They are refused by name, so that nobody looks for a spelling mistake. A name of this list can be given to nothing.
+They are refused by name, so that nobody looks for a spelling mistake.
 """
 
 import re
 
 from rules.conditions.errors import ConditionError
-
-NAMES = frozenset({"rise", "flow", "ullage", "time_to_brim", "time_to_suction"})
 
 _FORMS = tuple(
     (re.compile(pattern), words)

@@ -6,9 +6,10 @@ micrometre: below that, the arithmetic's own noise would decide.
 
 import operator
 from collections.abc import Callable
+from dataclasses import fields, is_dataclass
 from typing import assert_never
 
-from rules.conditions.tree import Literal, Name, Product, Relation, Sum, Term
+from rules.conditions.tree import Commanded, Is, Literal, Name, Product, Relation, Status, Sum, Term
 from rules.model import Bounds
 from rules.truth import FALSE, TRUE, UNKNOWN
 
@@ -99,3 +100,14 @@ def names_in(term: Term) -> list[Name]:
             return names_in(term.term)
         case _:
             return []
+
+
+def names_of(tree: object) -> set[str]:
+    """Return the name of everything that a condition, or a part of one, reads."""
+    if isinstance(tree, tuple):
+        return {name for part in tree for name in names_of(part)}
+    if isinstance(tree, Literal) or not is_dataclass(tree):
+        return set()
+    if isinstance(tree, Name | Is | Commanded | Status):
+        return {tree.name}
+    return {name for part in fields(tree) for name in names_of(getattr(tree, part.name))}

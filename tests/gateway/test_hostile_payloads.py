@@ -103,7 +103,7 @@ def test_no_payload_of_a_hundred_thousand_moves_anything(seed: int) -> None:
         for topic, payload in CALM.items():
             plant.step(Message(t, topic, payload))
     heard = [topic for topic in CALM if not topic.endswith("/alive")]
-    before = sum(sensor.rejected for sensor in plant.sensors)
+    before = sum(sensor.rejected for sensor in plant.meters.sensors)
     for _ in range(MANY // ROUNDS):
         t += SECOND // 100
         topic = dice.choice(heard)
@@ -114,7 +114,7 @@ def test_no_payload_of_a_hundred_thousand_moves_anything(seed: int) -> None:
             for one, calm in CALM.items():
                 effects += plant.step(Message(t, one, calm))
         assert not [effect for effect in effects if isinstance(effect, (Command, RuleChange))], (topic, payload)
-    assert sum(sensor.rejected for sensor in plant.sensors) - before == MANY // ROUNDS
+    assert sum(sensor.rejected for sensor in plant.meters.sensors) - before == MANY // ROUNDS
     drum = [*plant.step(Message(t, "dairy/condensate-drum/float", b"1")), *plant.step(LinkUp(t + 2 * SECOND))]
     assert [effect.payload for effect in drum if isinstance(effect, Command) and not effect.again] == ["stopped"]
 
@@ -127,7 +127,7 @@ def test_no_payload_on_the_topic_of_life_counts_as_life(seed: int) -> None:
     plant.step(Start(0, 0))
     plant.step(LinkUp(0))
     plant.step(Message(0, "dairy/wash-sump/float", b"0"))
-    float_ = next(sensor for sensor in plant.sensors if sensor.plan.name == "wash-sump.high-float")
+    float_ = next(sensor for sensor in plant.meters.sensors if sensor.plan.name == "wash-sump.high-float")
     for _ in range(200):
         plant.step(Message(1, "dairy/wash-sump/alive", _hostile(dice)))
         assert float_.signal.value is None

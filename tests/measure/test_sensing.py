@@ -8,7 +8,6 @@ from hypothesis import strategies as st
 
 from gateway.measure.calibration import Line
 from gateway.measure.reading import convert
-from gateway.measure.sensing import SENSES
 from gateway.measure.sensing.capacitance import Capacitance
 from gateway.measure.sensing.current import Current
 from gateway.measure.sensing.distance import Distance
@@ -16,7 +15,7 @@ from gateway.measure.sensing.frequency import Frequency
 from gateway.measure.sensing.level import Level
 from gateway.measure.sensing.method import Method
 from gateway.measure.sensor_plan import SensorPlan
-from gateway.measure.shapes import FORMS, Shape
+from gateway.measure.shapes import Shape
 from gateway.measure.shapes.prism import rectangular, vertical_cylinder
 from gateway.measure.status import Status
 
@@ -116,10 +115,3 @@ def test_levels_outside_the_tank_count_as_its_bottom_or_its_top(name: str) -> No
     shape = SHAPES[name]
     assert shape.volume(-0.1) == 0
     assert shape.volume(shape.height + 1) == shape.volume(shape.height)
-
-
-def test_what_arrives_later_is_named_already() -> None:
-    """The registries name every method and every form; the others have no method of this file to test."""
-    supported = {name for name, sense in SENSES.items() if sense.supported}
-    assert supported == {"level", "distance", "current", "capacitance", "frequency", "contact"}
-    assert {form for form, supported in FORMS.items() if supported} == {"vertical cylinder", "rectangular"}

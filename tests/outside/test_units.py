@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from gateway.settings.units import read, read_as, scale
+from gateway.settings.units import linear, read, read_as
 from rules.quantity import Dimension
 
 # Source: NIST Special Publication 811, Guide for the Use of the SI, appendix B.8, as carried by the public R package
@@ -72,9 +72,12 @@ def test_pressures_as_nist_has_them(unit: str) -> None:
 def test_units_that_are_exact_by_definition(unit: str) -> None:
     """With and without a blank, and as a scale."""
     factor, dimension = EXACT[unit]
-    for value, found in (read(f"1 {unit}"), read(f"1{unit}"), read(f" +1.0  {unit} "), scale(unit)):
+    for value, found in (read(f"1 {unit}"), read(f"1{unit}"), read(f" +1.0  {unit} ")):
         assert value == pytest.approx(factor, rel=1e-12)
         assert found is dimension
+    scale, zero, kind = linear(unit)
+    assert scale == pytest.approx(factor, rel=1e-12)
+    assert (zero, kind) == (0.0, dimension)
 
 
 # Source: the definition of the Celsius scale (0 degC = 273.15 K) and, for Fahrenheit, NIST SP 811 section B.8.

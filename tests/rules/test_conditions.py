@@ -108,7 +108,6 @@ REFUSED = [
     ("at least 0 of (a is yes)", 1, "can never be decided"),
     ("2oo3(a is yes, b is yes)", 1, "2oo3 with 2 conditions"),
     ("x * y above 1 m", 1, "one side of `*` must be a plain number"),
-    ("rise above 1 m/h", 1, "`rise` is not yet supported"),
     ("starts of p in 1 h above 6", 1, "`starts of … in …` is not yet supported"),
     ("a is yes or p is faulty", 15, "`is faulty` is not yet supported"),
     ("day is monday", 1, "`day is …` is not yet supported"),

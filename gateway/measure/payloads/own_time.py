@@ -2,7 +2,6 @@
 
 import re
 from collections.abc import Callable
-from datetime import UTC, datetime, timedelta, timezone
 from typing import Any
 
 from gateway.measure.payloads.payload import PayloadError, Pointer, number_of, shown
@@ -39,16 +38,28 @@ def rfc_3339(value: Any) -> int:
         raise PayloadError(f"'{shown(str(value))}' is no time as RFC 3339 writes it")
     year, month, day, hour, minute, second = (int(part) for part in found.groups()[:6])
     fraction, sign, zone_hours, zone_minutes = found.groups()[6:]
-    try:
-        offset = timedelta(hours=int(zone_hours or 0), minutes=int(zone_minutes or 0))
-        zone = timezone(-offset if sign == "-" else offset)
-        when = datetime(year, month, day, hour, minute, min(second, 59), tzinfo=zone)
-    except ValueError:
-        raise PayloadError(f"'{shown(value)}' is no time that a clock can show") from None
-    if second > 60 or int(zone_minutes or 0) > 59 or int(zone_hours or 0) > 23:
+    offset = int(zone_hours or 0) * 3600 + int(zone_minutes or 0) * 60
+    if not (
+        (1 <= month <= 12 and 1 <= day <= _days_in(year, month) and hour <= 23 and minute <= 59 and second <= 60)
+        and int(zone_hours or 0) <= 23
+        and int(zone_minutes or 0) <= 59
+    ):
         raise PayloadError(f"'{shown(value)}' is no time that a clock can show")
-    whole = (when - datetime(1970, 1, 1, tzinfo=UTC)) // timedelta(seconds=1) + (second == 60)
-    return _within(whole * SECOND + int(f"{fraction or 0:0<9}"[:9]))
+    seconds = _days_since_1970(year, month, day) * 86_400 + hour * 3600 + minute * 60 + second
+    seconds += offset if sign == "-" else -offset
+    return _within(seconds * SECOND + int(f"{fraction or 0:0<9}"[:9]))
+
+
+def _days_in(year: int, month: int) -> int:
+    leap = year % 4 == 0 and (year % 100 != 0 or year % 400 == 0)
+    return 29 if month == 2 and leap else (31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31)[month - 1]
+
+
+def _days_since_1970(year: int, month: int, day: int) -> int:
+    """Return the days from 1970-01-01 in the Gregorian calendar, counting years from March on."""
+    years = year - (month <= 2)
+    days = (153 * ((month + 9) % 12) + 2) // 5 + day - 1
+    return 365 * years + years // 4 - years // 100 + years // 400 + days - 719_468
 
 
 FORMS: dict[str, Callable[[Any], int]] = {"unix s": _seconds, "unix ms": _milliseconds, "RFC 3339": rfc_3339}

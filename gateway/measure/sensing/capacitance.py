@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from gateway.measure.calibration import Line
+from gateway.measure.calibration import Curve
 from gateway.measure.sensing.method import Converted
 
 
@@ -13,7 +13,7 @@ class Capacitance:
     Source: two capacitors in parallel, the wetted and the dry part (any text on electromagnetism).
     """
 
-    line: Line
+    line: Curve
 
     def convert(self, raw: float) -> Converted:
         """Return the level in m for a capacitance in F."""

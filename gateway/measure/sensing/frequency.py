@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from gateway.measure.calibration import Line
+from gateway.measure.calibration import Curve
 from gateway.measure.sensing.method import Converted
 from gateway.measure.status import Status
 
@@ -17,7 +17,7 @@ class Frequency:
     covered probe gives about 5.6 kHz, not 41.8 kHz. Source: v(t) = V(1 - exp(-t/RC)), which fixes the period to k·R·C.
     """
 
-    line: Line
+    line: Curve
 
     def convert(self, raw: float) -> Converted:
         """Return the level in m for a frequency in Hz; no frequency at all is a failure of the oscillator."""

@@ -4,7 +4,7 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from gateway.measure.calibration import Line
+from gateway.measure.calibration import Curve
 from gateway.measure.sensing.method import Converted
 from gateway.measure.status import Status
 
@@ -21,7 +21,7 @@ class Level:
 
     to_level: Callable[[float], float] | None = None
     to_raw: Callable[[float], float] | None = None
-    line: Line | None = None
+    line: Curve | None = None
 
     def convert(self, raw: float) -> Converted:
         """Return the level in m for a raw value in m, as a share, or in m3."""

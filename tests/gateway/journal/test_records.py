@@ -85,7 +85,7 @@ def test_effects_come_back_by_their_subject(tmp_path: Path) -> None:
         assert row.data.items() <= facts.items()
         subject = effect._fields[2]  # comes after the two times, in every effect
         assert set(facts) - set(row.data) <= {"t", "at", "overruled", subject}
-    assert effect_row(1, Value(1, 2, "a", 1.0, 0.5, 2.0, "good", None)) is None
+    assert effect_row(1, Value(1, 2, "a", 1.0, 0.5, 2.0, None, "good", None)) is None
 
 
 def test_snapshots_and_settings_come_back(tmp_path: Path) -> None:

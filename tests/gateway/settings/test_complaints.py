@@ -8,7 +8,7 @@ IN_A_TANK = [
     # keys and kinds of values
     ("tank: sump", "^brimm: 1 m\ntank: sump", "`brimm` is not known here; did you mean `brim`?"),
     ("tank: sump\n", "^title: sump\n", "`tank` is missing"),
-    ("senses: distance, ", "senses: distance, ^zzz: 1, ", "`zzz` is not known here; known: topic, field, senses"),
+    ("senses: distance, ", "senses: distance, ^zzz: 1, ", "`zzz` is not known here; known: topic, field, senml"),
     ("  head: {topic: farm/head, ", "  head: ^{", "`topic` is missing"),
     ("brim: 2.00 m", "brim: ^2.00", "`2.0` needs a unit; expected a length such as `1.40 m`"),
     ("brim: 2.00 m", "brim: ^2 l", "`2 l` is a volume; expected a length such as `1.40 m`"),
@@ -55,14 +55,13 @@ IN_A_TANK = [
     ("diameter: 1.60 m", "diameter: ^0 m", "expected more than nothing"),
     # ways to sense
     ("senses: distance", "senses: ^smell", "`smell` is no way to sense; expected one of level, distance, "),
-    ("senses: distance", "senses: ^pressure", "`pressure` is not yet supported"),
     (
         "senses: distance, unit: mm, mounted_at: 2.5 m",
         "senses: ^distance, unit: mm",
         "`mounted_at` is missing; this way",
     ),
     ("unit: mm", "unit: ^Hz", "`Hz` is no unit of a length"),
-    ("unit: mm", "unit: ^degC", "`degC` has a zero of its own and cannot be a scale"),
+    ("unit: mm", "unit: ^degC", "`degC` is no unit of a length"),
     ("unit: mm", "unit: mm, field: ^mm", "a pointer begins with '/', unlike 'mm'"),
     ("unit: mm", "unit: mm, field: ^/a~b", "in a pointer, '~' is followed by 0 or 1"),
     ("unit: mm", "unit: mm, ^span: [0 m, 1 m]", "`distance` does not use `span`"),

@@ -228,4 +228,4 @@ def test_a_payload_far_from_any_level_ends_in_a_named_status(payload: bytes) -> 
     effects = plant.step(Start(1, 0)) + plant.step(LinkUp(2)) + plant.step(Message(3, "t", payload))
     assert all(told(effect) for effect in effects)
     small = float(payload) < 1e6 and float(payload) > -1e6
-    assert plant.sensors[0].status is (Status.GOOD if small else Status.FAILURE)
+    assert plant.meters.sensors[0].status is (Status.GOOD if small else Status.FAILURE)
