@@ -29,6 +29,7 @@ class _Place(NamedTuple):
     members: tuple[int, ...]
     floats: tuple[tuple[int, float], ...]  # (sensor, height in m)
     slots: tuple[tuple[str, int], ...]  # (quantity, slot), of those that are asked for
+    only: Sensor | None  # the sensor, where there is but one and no float beside it
 
 
 class Meters:
@@ -54,11 +55,13 @@ class Meters:
 
     def _place(self, tank: Tank, slots: Mapping[str, int]) -> _Place:
         plan = tank.plan
+        members = tuple(self._index[name] for name in plan.sensors)
         return _Place(
             tank,
-            tuple(self._index[name] for name in plan.sensors),
+            members,
             tuple((self._index[name], height) for name, height in plan.floats.items()),
             tuple((name, slots[full]) for name in QUANTITIES if (full := f"{plan.name}.{name}") in slots),
+            self.sensors[members[0]] if len(members) == 1 and not plan.floats else None,
         )
 
     def _tanks_by_sensor(self) -> list[tuple[int, ...]]:
@@ -170,30 +173,41 @@ class Meters:
     def signals(self, t: int, wall: int, indices: Iterable[int], effects: list[Effect]) -> Changes:
         """Return the signals of sensors that may have changed, and of their tanks; add what people should see."""
         changes: Changes = []
-        tanks: dict[int, None] = {}
+        tanks: list[int] = []
         for index in indices:
             sensor = self.sensors[index]
             changes.append((self._slots[index], sensor.signal))
-            for other, what in self._felt_by[index]:
-                value = sensor.signal.value
-                self.sensors[other].feel(what, value if isinstance(value, float) else None)
-            for tank in self._tanks_of[index]:
-                tanks[tank] = None
+            if self._felt_by[index]:
+                self._felt(index)
             status = sensor.status
             if status is not self._status[index]:
                 self._status[index] = status
                 effects.append(SensorChange(t, wall, sensor.plan.name, status.value, sensor.reason))
-        for tank in tanks:
+            tanks += self._tanks_of[index]
+        for tank in tanks if len(tanks) < 2 else dict.fromkeys(tanks):
             self._measure(t, wall, self._places[tank], changes, effects)
         return changes
+
+    def _felt(self, index: int) -> None:
+        """Tell the sensors that depend on another one what it says."""
+        value = self.sensors[index].signal.value
+        for other, what in self._felt_by[index]:
+            self.sensors[other].feel(what, value if isinstance(value, float) else None)
 
     def _measure(self, t: int, wall: int, place: _Place, changes: Changes, effects: list[Effect]) -> None:
         """Bring a tank up to what its sensors say."""
         tank = place.tank
-        members = [self._member(index) for index in place.members]
-        ended = tank.update(t, wall, members, self._floats(place))
-        effects += [_told(t, wall, tank.plan.name, one) for one in ended]
-        changes += [(slot, tank.quantity(name)) for name, slot in place.slots]
+        if place.only is not None:
+            sensor = place.only
+            value, fault = sensor.signal
+            ended = tank.know(t, wall, value, fault, sensor.status, sensor.reason)
+        else:
+            members = [self._member(index) for index in place.members]
+            ended = tank.update(t, wall, members, self._floats(place))
+        if ended:
+            effects += [_told(t, wall, tank.plan.name, one) for one in ended]
+        for name, slot in place.slots:
+            changes.append((slot, tank.quantity(name)))
         found, brim = tank.measured, tank.plan.brim
         level = found.level if isinstance(found.level, float) else None
         share = level / brim if level is not None and brim else None

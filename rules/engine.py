@@ -150,8 +150,9 @@ class Engine:
         for slot, (value, fault) in changes:
             if values[slot] != value or faults[slot] is not fault:
                 values[slot], faults[slot] = value, fault
-                if self._crossed(slot, value):
-                    touched.update(self._readers[slot])
+                readers = self._readers[slot]
+                if readers and self._crossed(slot, value):
+                    touched.update(readers)
         if touched:
             self._settle(t, touched, effects)
 

@@ -9,8 +9,6 @@ from gateway.measure.payloads.payload import (
     PayloadError,
     document_of,
     number_of,
-    read_number,
-    read_word,
     shown,
     word_of,
 )
@@ -50,24 +48,24 @@ def restored_reading(plain: list[Any] | None) -> Reading | None:
 
 
 class Said(NamedTuple):
-    """What a payload says: a raw number or word, and where it says so, since when: `own` in ns since 1970, or `ago`."""
+    """What a payload says: a raw number or word, and of when it is: `own` in ns since 1970, or so long `ago`."""
 
     raw: float | str
     own: int | None = None
     ago: int | None = None
 
 
-Reader = Callable[[bytes], Said]
+def reader_of(plan: SensorPlan) -> Callable[[bytes], Said] | None:
+    """Return how the payloads of a sensor that says the time are read; None for one that does not.
 
-
-def reader_of(plan: SensorPlan) -> Reader:
-    """Return how the payloads of a sensor are read; what is returned raises PayloadError for what is no reading."""
+    What is returned raises PayloadError for what is no reading.
+    """
     pointer, own_time, name = plan.pointer, plan.own_time, plan.senml
     is_word = plan.method is None
     if name is not None:
         return lambda payload: _of_record(newest(resolve(document_of(payload)), name), plan)
     if own_time is None:
-        return lambda payload: Said(read_word(payload, pointer) if is_word else read_number(payload, pointer))
+        return None
     if pointer is None:
         raise ValueError("a reading with its own time is JSON, and `field` says where in it the value stands")
 

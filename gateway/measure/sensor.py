@@ -7,7 +7,7 @@ payload → raw value and its age → range → method → plausible? → covere
 from collections.abc import Mapping
 from typing import Any
 
-from gateway.measure.payloads.payload import PayloadError, read_word, shown
+from gateway.measure.payloads.payload import PayloadError, read_number, read_word, shown
 from gateway.measure.reading import Reading, Said, convert, reader_of, restored_reading
 from gateway.measure.sensor_plan import AlivePlan, SensorPlan
 from gateway.measure.status import Status, worse
@@ -196,39 +196,43 @@ class Sensor:
 
     def _judged(self, t: int, topic: str, payload: bytes, offset: int) -> tuple[Reading, Happens | None, int]:
         """Return what a message comes to, what that is for the judge (None: no news), and its age in ns."""
+        plan, age = self.plan, 0
+        raw: float | str
         try:
-            said = self._read(payload)
+            if self._read is not None:
+                said = self._read(payload)
+                raw = said.raw
+                known_age, reason = self._age(said, t + offset)
+                if known_age is None:
+                    return Reading(t, topic, payload, raw, None, Status.FAILURE, reason), None, 0
+                age = known_age
+            elif plan.method is None:
+                raw = read_word(payload, plan.pointer)
+            else:
+                raw = read_number(payload, plan.pointer)
         except PayloadError as problem:
             return Reading(t, topic, payload, None, None, Status.FAILURE, str(problem)), Happens.REJECTED, 0
-        age = 0
-        if self.ages is not None:
-            verdict = self._age(said, t + offset)
-            if verdict[0] is None:
-                return Reading(t, topic, payload, said.raw, None, Status.FAILURE, verdict[1]), None, 0
-            age = verdict[0]
-        value, status, reason, happens = self._worth(t, said.raw)
-        return Reading(t, topic, payload, said.raw, value, status, reason), happens, age
+        value, status, reason, happens = self._worth(t, raw)
+        return Reading(t, topic, payload, raw, value, status, reason), happens, age
 
     def _age(self, said: Said, arrived: int) -> tuple[int | None, str | None]:
-        if self.ages is None or (said.own is None and said.ago is None):
-            return 0, None
-        if said.own is None:
-            return said.ago, None
+        if self.ages is None or said.own is None:
+            return said.ago or 0, None
         return self.ages.take(arrived, said.own)
 
     def _worth(self, t: int, raw: float | str) -> tuple[Value, Status, str | None, Happens]:
         """Return what a raw value means: the value, its status with the reason, and what it is for the judge."""
-        method = self._method
-        if isinstance(raw, str) or method is None:
+        method, plan = self._method, self.plan
+        if method is None or isinstance(raw, str):
             return self._word(str(raw))
-        level, status, reason, signalled, held = convert(self.plan, method, raw)
+        level, status, reason, signalled, held = convert(plan, method, raw)
         if level is None or (held and FAULTS[self._judge.state] is not Fault.NONE):
             return None, Status.FAILURE, reason, Happens.SIGNALLED if signalled else Happens.REJECTED
         if self.plausible is not None and (odd := self._odd(t, raw, level)):
             return None, Status.FAILURE, *odd
         if self._unfelt:
             status, reason = worse((status, reason), (Status.OUT_OF_SPECIFICATION, self._unfelt_told()))
-        return level if self.plan.covers is None else self.plan.covers.of(level), status, reason, Happens.ACCEPTED
+        return level if plan.covers is None else plan.covers.of(level), status, reason, Happens.ACCEPTED
 
     def _word(self, said: str) -> tuple[Value, Status, str | None, Happens]:
         word = self.plan.words.get(said)

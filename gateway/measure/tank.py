@@ -14,7 +14,7 @@ from gateway.measure.shapes import Shape
 from gateway.measure.status import Status, worse
 from gateway.measure.trend.pump import PumpFlow
 from gateway.measure.trend.slope import Slope
-from gateway.measure.trend.totals import Calendar, Flows, Total, Totals
+from gateway.measure.trend.totals import Calendar, Total, Totals
 from rules.model import Bounds, Fault, Signal, Value, restored, saved
 
 SECOND = 1_000_000_000
@@ -94,12 +94,16 @@ class Tank:
 
     def update(self, t: int, wall: int, members: Sequence[Member], floats: Sequence[Float]) -> list[Total | PumpRun]:
         """Take the sensors as they are at `t`; return what has ended by it. `measured` is new then."""
-        level = self._level(t, members, floats)
-        value = level.value
-        if isinstance(value, float) and level.fault is Fault.NONE:
-            return self._moved(t, wall, value, level)
-        volume = None
-        self.measured = Measured(value, level.fault, volume, None, None, None, level.status, level.reason)
+        return self.know(t, wall, *self._level(t, members, floats))
+
+    def know(
+        self, t: int, wall: int, level: Value, fault: Fault, status: Status, reason: str | None
+    ) -> list[Total | PumpRun]:
+        """Let the level be what it is; return what has ended by it. Of a tank with one sensor, that is its level."""
+        if isinstance(level, float):
+            return self._moved(t, wall, level, status, reason)
+        known = level if isinstance(level, Bounds) else None
+        self.measured = Measured(known, fault, None, None, None, None, status, reason)
         if self._totals is not None:
             self._totals.pause()
         return []
@@ -129,20 +133,26 @@ class Tank:
 
     # ---- movement -------------------------------------------------------------------------------------------------
 
-    def _moved(self, t: int, wall: int, value: float, level: Combined) -> list[Total | PumpRun]:
+    def _moved(self, t: int, wall: int, value: float, status: Status, reason: str | None) -> list[Total | PumpRun]:
         slope, shape = self._slope, self.plan.shape
         slope.take(t, value)
         rise = slope.slope()
-        volume = flow = inflow = None
-        ended: list[Total | PumpRun] = []
-        if shape is not None:
-            volume = shape.volume(value)
-            if rise is not None:
-                flow = rise * shape.area(slope.mean)
-                inflow = self._inflow(flow)
-                ended += self._settle_pumps(inflow)
-            ended += self._count(wall, value, inflow)
-        self.measured = Measured(value, Fault.NONE, volume, rise, flow, inflow, level.status, level.reason)
+        if shape is None:
+            self.measured = Measured(value, Fault.NONE, None, rise, None, None, status, reason)
+            return []
+        flow = inflow = None
+        if rise is not None:
+            flow = rise * shape.area(slope.mean)
+            inflow = self._inflow(flow) if self._running else flow
+        self.measured = Measured(value, Fault.NONE, shape.volume(value), rise, flow, inflow, status, reason)
+        if self._totals is None:
+            return []
+        if inflow is None:
+            self._totals.pause()
+            return []
+        ended: list[Total | PumpRun] = [*self._count(self._totals, wall, value, inflow)]
+        if self.pumps and not self._running:
+            ended += self._settle_pumps(inflow)
         return ended
 
     def _inflow(self, flow: float) -> float | None:
@@ -155,16 +165,11 @@ class Tank:
             taken += one
         return flow + taken
 
-    def _count(self, wall: int, value: float, inflow: float | None) -> list[Total]:
-        totals = self._totals
-        if totals is None or inflow is None:
-            if totals is not None:
-                totals.pause()
-            return []
-        taken = sum(self.flow_of(name) or 0.0 for name in self._running)
-        into, unseen = max(inflow, 0.0), max(-inflow, 0.0)
-        over = into if self.plan.brim is not None and value >= self.plan.brim else 0.0
-        return totals.add(wall, Flows(into, taken + unseen, over))
+    def _count(self, totals: Totals, wall: int, value: float, inflow: float) -> list[Total]:
+        taken = sum(self.flow_of(name) or 0.0 for name in self._running) if self._running else 0.0
+        into, unseen = (inflow, 0.0) if inflow > 0 else (0.0, -inflow)
+        brim = self.plan.brim
+        return totals.add(wall, into, taken + unseen, into if brim is not None and value >= brim else 0.0)
 
     @property
     def running(self) -> dict[str, Total]:
@@ -200,9 +205,7 @@ class Tank:
         for one in self.pumps.values():
             one.disturbed()
 
-    def _settle_pumps(self, inflow: float | None) -> list[PumpRun]:
-        if self._running or inflow is None:
-            return []
+    def _settle_pumps(self, inflow: float) -> list[PumpRun]:
         flows = {name: pump.settled(inflow) for name, pump in self.pumps.items()}
         return [PumpRun(name, flow) for name, flow in flows.items() if flow is not None]
 
@@ -211,15 +214,15 @@ class Tank:
     def quantity(self, name: str) -> Signal:
         """Return a quantity of the tank as a signal, by its name in conditions."""
         found = self.measured
-        value = self._value(name)
+        if name == "level":
+            return Signal(found.level, found.fault)
+        value = found.volume if name == "volume" and found.volume is not None else self._value(name)
         if value is not None:
             return Signal(value, Fault.NONE)
         return Signal(None, found.fault if found.fault is not Fault.NONE else Fault.AWAITED)
 
     def _value(self, name: str) -> Value:
         match name:
-            case "level":
-                return self.measured.level
             case "volume":
                 return self._volume()
             case "ullage":

@@ -58,7 +58,7 @@ def declare(site: models.Site, names: Names) -> SiteDecl:
     for tank, part in parts(site):
         for quantity in QUANTITIES if tank else ():
             decl = names.meanings.get(full(tank, quantity))
-            if isinstance(decl, SignalDecl) and (quantity in {"level", "volume"} or decl.name in asked):
+            if isinstance(decl, SignalDecl) and (quantity == "level" or decl.name in asked):
                 signals.append(decl)
         signals += [signal_of(tank, name, sensor) for name, sensor in part.sensors.items()]
     return SiteDecl(

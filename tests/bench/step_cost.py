@@ -18,6 +18,10 @@ from gateway.events import LinkUp, Message, Start, Wake
 from gateway.plant import Plant
 from gateway.settings.assemble import plant_plan
 
+READINGS, TURNS = 20_000, 8
+SECOND = 1_000_000_000
+EVERY = 5 * SECOND  # ns from one reading of a tank to its next, whatever the number of tanks
+
 
 def plant_of(tanks: int) -> Plant:
     """Return a started plant of so many tanks."""
@@ -28,13 +32,12 @@ def plant_of(tanks: int) -> Plant:
     return plant
 
 
-def microseconds(plant: Plant, tanks: int, readings: int, began: int) -> float:
-    """Return the microseconds a reading, each on the next tank."""
+def microseconds(plant: Plant, tanks: int, turn: int) -> float:
+    """Return the microseconds a reading, each on the next tank, each in every rule's dead band."""
+    step = EVERY // tanks
     messages = [
-        Message(
-            began + n * 1_000_000, f"bench/tank-{n % tanks}", b'{"hz": %d}' % (6000 + n * 37 % 1499)
-        )  # in every rule's dead band
-        for n in range(readings)
+        Message(SECOND + n * step, f"bench/tank-{n % tanks}", b'{"hz": %d}' % (6000 + n * 37 % 1499))
+        for n in range(turn * READINGS, (turn + 1) * READINGS)
     ]
     gc.disable()
     start = time.perf_counter()
@@ -44,16 +47,16 @@ def microseconds(plant: Plant, tanks: int, readings: int, began: int) -> float:
             plant.step(Wake(message.t))
     took = time.perf_counter() - start
     gc.enable()
-    return took / readings * 1e6
+    return took / READINGS * 1e6
 
 
 def main() -> None:
     """Measure small and large sites in turn, and print."""
     few, many = plant_of(10), plant_of(1000)
     pairs = []
-    for turn in range(7):
-        began = 1_000_000_000 + turn * 40_000_000_000
-        pairs.append((microseconds(few, 10, 20_000, began), microseconds(many, 1000, 20_000, began)))
+    for turn in range(TURNS):
+        pairs.append(tuple(microseconds(plant, tanks, turn) for plant, tanks in ((few, 10), (many, 1000))))
+    pairs = pairs[1:]  # the first turn fills the windows
     small, large = (statistics.median(values) for values in zip(*pairs, strict=True))
     ratio = statistics.median(b / a for a, b in pairs)
     print(f"10 tanks: {small:.1f} us a reading; 1,000 tanks: {large:.1f} us; ratio {ratio:.2f}")

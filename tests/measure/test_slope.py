@@ -71,7 +71,7 @@ def test_two_spikes_to_different_sides_move_nothing() -> None:
 def test_many_readings_are_thinned_to_a_bounded_number() -> None:
     """A kilohertz costs no more memory than what the window can hold, and gives the same slope."""
     slope = fed([(n * SECOND // 1000, 1e-3 * n / 1000) for n in range(100_000)])
-    assert len(slope.save()["window"]) <= 241
+    assert len(slope.save()["times"]) <= 241
     assert slope.slope() == pytest.approx(1e-3)
 
 
