@@ -53,9 +53,7 @@ def microseconds(plant: Plant, tanks: int, turn: int) -> float:
 def main() -> None:
     """Measure small and large sites in turn, and print."""
     few, many = plant_of(10), plant_of(1000)
-    pairs = []
-    for turn in range(TURNS):
-        pairs.append(tuple(microseconds(plant, tanks, turn) for plant, tanks in ((few, 10), (many, 1000))))
+    pairs = [(microseconds(few, 10, turn), microseconds(many, 1000, turn)) for turn in range(TURNS)]
     pairs = pairs[1:]  # the first turn fills the windows
     small, large = (statistics.median(values) for values in zip(*pairs, strict=True))
     ratio = statistics.median(b / a for a, b in pairs)
