@@ -148,6 +148,8 @@ def _any_quantity(value: object) -> Quantity:
 
 Length = Annotated[float, of(Dimension.LENGTH)]
 Size = Annotated[Length, BeforeValidator(_size)]
+Plain = Annotated[float, of(Dimension.NUMBER)]
+VolumeValue = Annotated[float, of(Dimension.VOLUME)]
 Duration = Annotated[int, BeforeValidator(_duration)]
 AnyQuantity = Annotated[Quantity, BeforeValidator(_any_quantity)]
 Name = Annotated[str, BeforeValidator(name)]

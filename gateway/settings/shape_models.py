@@ -1,28 +1,66 @@
 """What a user can write of a tank's inside. Lengths in m once read."""
 
-from typing import Annotated, ClassVar
+from typing import Annotated, ClassVar, Literal
 
-from pydantic import model_validator
+from pydantic import Field, model_validator
 
 from gateway.measure.shapes import FORMS
-from gateway.settings.fields import Part, Size, known
+from gateway.settings.fields import Length, Part, Plain, Size, Text, VolumeValue, known
+
+HEADS = Literal["flat", "conical", "ellipsoidal", "torispherical", "hemispherical"]
+
+MEASURES: dict[str, tuple[frozenset[str], frozenset[str]]] = {
+    "vertical cylinder": (frozenset({"diameter", "height"}), frozenset({"bottom"})),
+    "horizontal cylinder": (frozenset({"diameter", "length"}), frozenset({"ends"})),
+    "rectangular": (frozenset({"length", "width", "height"}), frozenset()),
+    "sphere": (frozenset({"diameter"}), frozenset()),
+    "frustum": (frozenset({"bottom", "top", "height"}), frozenset()),
+    "strapping": (frozenset({"table"}), frozenset()),
+}
+"""What each form must have, and what it may have."""
+
+
+class Head(Part):
+    """The bottom of an upright cylinder, or the ends of one that lies. `dish`, `knuckle` are parts of the diameter."""
+
+    form: HEADS
+    depth: Size | None = None
+    dish: Plain | None = None
+    knuckle: Plain | None = None
+
+    @model_validator(mode="after")
+    def _measures(self) -> "Head":
+        needs_depth = self.form in {"conical", "ellipsoidal"}
+        if needs_depth != (self.depth is not None):
+            raise ValueError(f"a {self.form} head {'needs its' if needs_depth else 'has no'} `depth`")
+        if self.form != "torispherical" and (self.dish is not None or self.knuckle is not None):
+            raise ValueError("only a torispherical head has `dish` and `knuckle`")
+        return self
 
 
 class Shape(Part):
-    """The inside of a tank. Lengths in m."""
+    """The inside of a tank."""
 
-    LATER: ClassVar[frozenset[str]] = frozenset({"bottom", "ends", "table", "top"})
+    LATER: ClassVar[frozenset[str]] = frozenset()
 
-    form: Annotated[str, known("form", FORMS)]
+    form: Annotated[str, known("form", dict.fromkeys(FORMS, True))]
     diameter: Size | None = None
     length: Size | None = None
     width: Size | None = None
-    height: Size
+    height: Size | None = None
+    bottom: Head | Size | None = None
+    ends: Head | None = None
+    top: Size | None = None
+    table: list[tuple[Length, VolumeValue]] | Text | None = Field(default=None)
 
     @model_validator(mode="after")
     def _measures(self) -> "Shape":
-        needed = {"vertical cylinder": {"diameter"}, "rectangular": {"length", "width"}}[self.form]
-        given = {key for key in ("diameter", "length", "width") if getattr(self, key) is not None}
-        if needed != given:
-            raise ValueError(f"a {self.form} has {', '.join(sorted(needed))} and height")
+        needed, possible = MEASURES[self.form]
+        given = {key for key in self.model_fields_set if key != "form"}
+        if not needed <= given <= needed | possible:
+            told = ", ".join(sorted(needed)) + "".join(f", and may have `{key}`" for key in sorted(possible))
+            raise ValueError(f"a {self.form} has {told}")
+        if "bottom" in given and isinstance(self.bottom, Head) != (self.form == "vertical cylinder"):
+            expected = "`{form: conical, depth: …}`" if self.form == "vertical cylinder" else "a diameter"
+            raise ValueError(f"the `bottom` of a {self.form} is {expected}")
         return self

@@ -1,19 +1,12 @@
-"""Shapes of tanks: level to volume and back, one file a family; `FORMS` is the whole list, with what arrives later.
+"""Shapes of tanks: level to volume and back, one file a family; `FORMS` is the whole list.
 
 Level 0 is the lowest inside point. Levels outside the tank count as its bottom or its top.
 """
 
 from typing import Protocol
 
-FORMS = {
-    "vertical cylinder": True,
-    "horizontal cylinder": False,
-    "rectangular": True,
-    "sphere": False,
-    "frustum": False,
-    "strapping": False,
-}
-"""Every form of the settings, and whether it is supported yet."""
+FORMS = ("vertical cylinder", "horizontal cylinder", "rectangular", "sphere", "frustum", "strapping")
+"""Every form of the settings."""
 
 
 class Shape(Protocol):
