@@ -1,11 +1,13 @@
 """The kinds of values that settings hold: each reads what a user wrote into SI units, or says what is wrong with it."""
 
 import re
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
+from functools import reduce
+from operator import or_
 from typing import Annotated, Any
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Discriminator, Tag
 
 from gateway.measure.payloads.payload import Pointer
 from gateway.settings.units import SECOND, linear, read_as
@@ -15,6 +17,19 @@ from rules.quantity import Dimension, Quantity
 SMALLEST, LARGEST = 1e-6, 1e6  # m; levels are told apart to 1e-6 m, and areas and volumes stay finite numbers
 
 _NAME = re.compile(r"[A-Za-z][A-Za-z0-9-]{0,63}")
+
+
+def either(**tests: tuple[Any, Callable[[Any], bool]]) -> Any:
+    """Return a type that is one of several kinds, told apart by what was written; the first whose test says yes.
+
+    So a slip is complained of as a slip of that kind alone. The names are in brackets where errors name their place.
+    """
+    tagged = [Annotated[kind, Tag(f"[{name}]")] for name, (kind, _) in tests.items()]
+
+    def tell(value: Any) -> str:
+        return next((f"[{name}]" for name, (_, test) in tests.items() if test(value)), f"[{next(reversed(tests))}]")
+
+    return Annotated[reduce(or_, tagged), Discriminator(tell)]
 
 
 class Part(BaseModel):

@@ -9,14 +9,24 @@ import typing
 from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from pathlib import Path
-from typing import Any
+from typing import Annotated, Any
 
 from pydantic import BaseModel, ValidationError
 
 from gateway.errors import InputError
+from gateway.settings.beside import (
+    CalibrationFile,
+    calibrated,
+    files_beside,
+    is_beside,
+    read_table,
+    sensor_of,
+    table_of,
+    with_table,
+)
 from gateway.settings.complaint import Complaint, SettingsError
 from gateway.settings.fields import is_pattern
-from gateway.settings.models import Common, Site, SiteFile, TankFile
+from gateway.settings.models import Site, SiteFile, TankFile
 from gateway.settings.yaml_reader import DEEPEST, LONGEST_FILE, MOST_VALUES, Node, read_yaml
 
 SITE_FILE = "site.yaml"
@@ -41,16 +51,24 @@ def load_texts(texts: Mapping[str, str], folder: Path) -> Site:
 
 
 def _whole(texts: Mapping[str, str], folder: Path, complaints: list[Complaint]) -> Site:
-    files = {file: _Read(file, text, complaints) for file, text in texts.items()}
+    yaml = {file: text for file, text in texts.items() if not file.lower().endswith(".csv")}
+    files = {file: _Read(file, text, complaints) for file, text in yaml.items()}
     site_file = files[SITE_FILE].model(SiteFile, complaints) if SITE_FILE in files else None
-    read = {file: files[file].model(TankFile, complaints) for file in files if file != SITE_FILE}
+    read = {
+        file: files[file].model(TankFile, complaints) for file in files if file != SITE_FILE and not is_beside(file)
+    }
+    read = {file: _with_table(tank, files[file], texts, complaints) for file, tank in read.items()}
     tanks = _by_name(read, files, complaints)
+    if isinstance(site_file, SiteFile):
+        site_file = _calibrated(site_file, tanks, files, complaints)
     if complaints or not isinstance(site_file, SiteFile):
         raise SettingsError(complaints)
     site = Site(file=site_file, tanks=tanks, folder=folder, texts=dict(texts), digest=digest(texts))
     from gateway.settings.cross import cross_check  # noqa: PLC0415 - it needs this module's places
 
-    complaints += cross_check(site, {file: one.node for file, one in files.items() if one.node is not None})
+    complaints += cross_check(
+        site, {file: one.node for file, one in files.items() if one.node is not None and not is_beside(file)}
+    )
     if complaints:
         raise SettingsError(complaints)
     return site
@@ -68,6 +86,9 @@ def _texts(folder: Path, complaints: list[Complaint]) -> dict[str, str]:
     """Return the texts of the site's files, `site.yaml` first, then the tanks in the order of their path's bytes."""
     texts = {SITE_FILE: _text(folder, SITE_FILE, complaints)}
     for file in sorted(_tank_files(folder, texts[SITE_FILE], complaints), key=os.fsencode):
+        texts[file] = _text(folder, file, complaints)
+    tables = {file: node for file, text in texts.items() if ".csv" in text and (node := read_yaml(file, text, []))}
+    for file in files_beside(folder, tables):
         texts[file] = _text(folder, file, complaints)
     return texts
 
@@ -112,6 +133,43 @@ def _by_name(
     return tanks
 
 
+def _with_table(
+    tank: BaseModel | None, file: "_Read", texts: Mapping[str, str], complaints: list[Complaint]
+) -> BaseModel | None:
+    """Return a tank with the strapping table that stands in a file of its own, if it has one."""
+    if not isinstance(tank, TankFile) or tank.shape is None or not isinstance(tank.shape.table, str):
+        return tank
+    name = table_of(file.file, file.node) if file.node is not None else None
+    if name is None or name not in texts:
+        message = f"there is no file `{tank.shape.table}` beside this one; expected a table such as `cistern.csv`"
+        complaints.append(file.complaint(("shape", "table"), message))
+        return tank
+    pairs, slips = read_table(name, texts[name])
+    complaints += slips
+    return tank if slips else with_table(tank, pairs)
+
+
+def _calibrated(
+    site: SiteFile, tanks: dict[str, TankFile], files: Mapping[str, "_Read"], complaints: list[Complaint]
+) -> SiteFile:
+    """Put the calibrations that stand in files of their own into their sensors."""
+    for file, read in files.items():
+        if not is_beside(file):
+            continue
+        found = read.model(CalibrationFile, complaints)
+        name, sensor = sensor_of(file)
+        part = tanks.get(name) if name else site
+        if part is None or sensor not in part.sensors:
+            complaints.append(Complaint(file, 1, 1, f"there is no sensor `{name + '.' if name else ''}{sensor}`"))
+        elif isinstance(found, CalibrationFile):
+            whole = calibrated(part, sensor, found)
+            if isinstance(whole, TankFile):
+                tanks[whole.tank] = whole
+            elif isinstance(whole, SiteFile):
+                site = whole
+    return site
+
+
 class _Read:
     """One file as read."""
 
@@ -127,7 +185,7 @@ class _Read:
         place = self.node.key_place(*path) if at_key else self.node.place(*path)
         return Complaint(self.file, *place, message)
 
-    def model(self, kind: type[Common], complaints: list[Complaint]) -> BaseModel | None:
+    def model(self, kind: type[BaseModel], complaints: list[Complaint]) -> BaseModel | None:
         """Return the file as a model, or None with what is wrong added to `complaints`."""
         if self.node is None:
             return None
@@ -142,12 +200,13 @@ class _Read:
         """Return whether nothing is written at `path`; `_without_value` has complained of it already."""
         node = self.node
         for step in path:
-            node = node.child(step) if node else None
+            if not str(step).startswith("["):  # what tells kinds of values apart is not written
+                node = node.child(step) if node else None
         return node is not None and node.value is None
 
     def _translated(self, kind: type[BaseModel], error: Any) -> Complaint:
         """Return one of pydantic's errors in our words, at its place."""
-        path = tuple(step for step in error["loc"] if step != "[key]")
+        path = tuple(step for step in error["loc"] if not str(step).startswith("["))
         last = path[-1] if path else ""
         match error["type"]:
             case "extra_forbidden":
@@ -231,9 +290,19 @@ def model_at(model: type[BaseModel] | None, path: tuple[str | int, ...]) -> type
             annotation = typing.get_args(annotation)[1]
         else:
             return None
-        if isinstance(annotation, types.UnionType):
-            annotation = next((part for part in typing.get_args(annotation) if part is not type(None)), None)
+        annotation = _likeliest(annotation)
     return annotation if isinstance(annotation, type) and issubclass(annotation, BaseModel) else None
+
+
+def _likeliest(annotation: Any) -> Any:
+    """Return the part of a union that can hold keys; anything else as it is."""
+    if typing.get_origin(annotation) is Annotated:
+        return _likeliest(typing.get_args(annotation)[0])
+    if typing.get_origin(annotation) not in {typing.Union, types.UnionType}:
+        return annotation
+    parts = [_likeliest(part) for part in typing.get_args(annotation) if part is not type(None)]
+    models = [part for part in parts if isinstance(part, type) and issubclass(part, BaseModel)]
+    return models[0] if models else parts[0]
 
 
 # ---- like ---------------------------------------------------------------------------------------------------

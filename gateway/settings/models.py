@@ -23,7 +23,7 @@ from gateway.settings.fields import (
     Zone,
     of,
 )
-from gateway.settings.sensor_models import Sensor, Take
+from gateway.settings.sensor_models import Sensor, Source
 from gateway.settings.shape_models import Shape
 from gateway.settings.units import SECOND, read_as
 from rules.quantity import Dimension
@@ -179,7 +179,7 @@ class TankFile(Common):
     shape: Shape | None = None
     brim: Size | None = None
     suction: Length | None = None
-    level: Name | Take | None = None
+    level: Source | None = None
     rise_over: Duration = 300 * SECOND
 
 

@@ -1,7 +1,7 @@
 """What a user can write of a sensor, key by key. Values are in SI units and nanoseconds once read."""
 
 import re
-from typing import Annotated, Any, ClassVar, Literal
+from typing import TYPE_CHECKING, Annotated, Any, ClassVar, Literal
 
 from pydantic import BeforeValidator, Field, model_validator
 
@@ -21,6 +21,7 @@ from gateway.settings.fields import (
     Text,
     Topic,
     Unit,
+    either,
     known,
     of,
 )
@@ -40,25 +41,26 @@ Conductivity = Annotated[float, of(Dimension.CONDUCTIVITY)]
 Medium = Literal["water"]
 
 
+def _pairs(written: object) -> object:
+    """Take each pair as a tuple, since strict reading tells lists and tuples apart."""
+    if not isinstance(written, list):
+        return written
+    if len(written) < 2:
+        raise ValueError("two points or more are needed; expected `[[raw, level], [raw, level]]`")
+    return [tuple(pair) if isinstance(pair, list) else pair for pair in written]
+
+
+Points = Annotated[list[tuple[AnyQuantity, Length]], BeforeValidator(_pairs)]
+
+
 class Calibration(Part):
     """Pairs of what the sensor said and the level in m; `covers` is what the probe reaches."""
 
     LATER: ClassVar[frozenset[str]] = frozenset()
 
-    points: list[tuple[AnyQuantity, Length]]
+    points: Points
     fit: Literal["through", "smooth", "least squares"] = "through"
     covers: list[Length] | None = Field(default=None, min_length=2, max_length=2)
-
-    @model_validator(mode="before")
-    @classmethod
-    def _pairs(cls, value: Any) -> Any:
-        """Take each pair as a tuple, since strict reading tells lists and tuples apart."""
-        if isinstance(value, dict) and isinstance(value.get("points"), list):
-            points = value["points"]
-            if len(points) < 2:
-                raise ValueError("two points or more are needed; expected `[[raw, level], [raw, level]]`")
-            return {**value, "points": [tuple(p) if isinstance(p, list) else p for p in points]}
-        return value
 
     @model_validator(mode="after")
     def _rising(self) -> "Calibration":
@@ -174,14 +176,22 @@ class Compensate(Part):
     at: Kelvin = 293.15
 
 
-def _felt(value: object) -> object:
-    """Return a sensor's name, or a value."""
-    if isinstance(value, str) and re.match(r"\s*[-+]?\d", value):
-        return read_as(value, Dimension.TEMPERATURE, Dimension.PRESSURE)
-    return value
+def _is_value(written: object) -> bool:
+    return isinstance(written, Quantity | int | float) or re.match(r"\s*[-+]?\d", str(written)) is not None
 
 
-Felt = Annotated[Quantity | Dotted, BeforeValidator(_felt)]
+def _felt(*wanted: Dimension) -> Any:
+    """Return the type of what is felt: a value, or the name of a sensor that tells it."""
+    value = Annotated[Quantity, BeforeValidator(lambda written: read_as(written, *wanted))]
+    return either(value=(value, _is_value), sensor=(Dotted, lambda _: True))
+
+
+if TYPE_CHECKING:
+    Air = Quantity | str
+    Barometer = Quantity | str
+else:
+    Air = _felt(Dimension.TEMPERATURE)
+    Barometer = _felt(Dimension.PRESSURE)
 
 
 def _angle(value: object) -> float:
@@ -216,8 +226,8 @@ class Sensor(Part):
     signal: list[Volt] | None = Field(default=None, min_length=2, max_length=2)
     density: Density | None = None
     medium: Medium | None = None
-    temperature: Felt | None = None
-    barometer: Felt | None = None
+    temperature: Air | None = None
+    barometer: Barometer | None = None
     payloads: Payloads | None = None
     on_change: OnChange | None = None
     expect_every: Duration | None = None
@@ -240,8 +250,7 @@ class Take(Part):
     agree_within: Size | None = None
 
 
-def take_or_name(value: Any) -> Any:
-    """Return a level's source as it is: the name of a sensor, or how to take one level from several."""
-    if isinstance(value, dict):
-        return Take.model_validate(value)
-    return value
+if TYPE_CHECKING:
+    Source = str | Take
+else:
+    Source = either(several=(Take, lambda written: isinstance(written, dict)), one=(Name, lambda _: True))

@@ -1,11 +1,11 @@
 """What a user can write of a tank's inside. Lengths in m once read."""
 
-from typing import Annotated, ClassVar, Literal
+from typing import TYPE_CHECKING, Annotated, ClassVar, Literal
 
-from pydantic import Field, model_validator
+from pydantic import BeforeValidator, model_validator
 
 from gateway.measure.shapes import FORMS
-from gateway.settings.fields import Length, Part, Plain, Size, Text, VolumeValue, known
+from gateway.settings.fields import Length, Part, Plain, Size, Text, VolumeValue, either, known
 
 HEADS = Literal["flat", "conical", "ellipsoidal", "torispherical", "hemispherical"]
 
@@ -18,6 +18,8 @@ MEASURES: dict[str, tuple[frozenset[str], frozenset[str]]] = {
     "strapping": (frozenset({"table"}), frozenset()),
 }
 """What each form must have, and what it may have."""
+
+_ORDER = ("diameter", "bottom", "top", "length", "width", "height", "table")
 
 
 class Head(Part):
@@ -38,6 +40,25 @@ class Head(Part):
         return self
 
 
+def _is_mapping(written: object) -> bool:
+    return isinstance(written, dict)
+
+
+def _pairs(written: object) -> object:
+    """Take each pair as a tuple, since strict reading tells lists and tuples apart."""
+    return [tuple(p) if isinstance(p, list) else p for p in written] if isinstance(written, list) else written
+
+
+Pairs = Annotated[list[tuple[Length, VolumeValue]], BeforeValidator(_pairs)]
+
+if TYPE_CHECKING:
+    Bottom = Head | float
+    Table = list[tuple[float, float]] | str
+else:
+    Bottom = either(head=(Head, _is_mapping), diameter=(Size, lambda _: True))
+    Table = either(pairs=(Pairs, lambda written: isinstance(written, list)), file=(Text, lambda _: True))
+
+
 class Shape(Part):
     """The inside of a tank."""
 
@@ -48,17 +69,18 @@ class Shape(Part):
     length: Size | None = None
     width: Size | None = None
     height: Size | None = None
-    bottom: Head | Size | None = None
+    bottom: Bottom | None = None
     ends: Head | None = None
     top: Size | None = None
-    table: list[tuple[Length, VolumeValue]] | Text | None = Field(default=None)
+    table: Table | None = None
 
     @model_validator(mode="after")
     def _measures(self) -> "Shape":
         needed, possible = MEASURES[self.form]
         given = {key for key in self.model_fields_set if key != "form"}
         if not needed <= given <= needed | possible:
-            told = ", ".join(sorted(needed)) + "".join(f", and may have `{key}`" for key in sorted(possible))
+            told = ", ".join(key for key in _ORDER if key in needed)
+            told += "".join(f", and may have `{key}`" for key in sorted(possible))
             raise ValueError(f"a {self.form} has {told}")
         if "bottom" in given and isinstance(self.bottom, Head) != (self.form == "vertical cylinder"):
             expected = "`{form: conical, depth: …}`" if self.form == "vertical cylinder" else "a diameter"

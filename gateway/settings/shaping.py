@@ -1,6 +1,8 @@
 """From what the settings say of a tank's inside to its shape."""
 
+from collections.abc import Hashable
 from functools import lru_cache
+from typing import cast
 
 from gateway.measure.shapes import Shape, heads
 from gateway.measure.shapes.horizontal import horizontal_cylinder
@@ -17,7 +19,7 @@ def shape_of(shape: models.Shape) -> Shape:
         case "vertical cylinder":
             return vertical_cylinder(diameter, height, _head(shape.bottom, diameter))
         case "horizontal cylinder":
-            return _horizontal(diameter, shape.length or 0.0, _head(shape.ends, diameter))
+            return _horizontal(diameter, shape.length or 0.0, cast("Hashable", _head(shape.ends, diameter)))
         case "rectangular":
             return rectangular(shape.length or 0.0, shape.width or 0.0, height)
         case "sphere":
@@ -31,9 +33,9 @@ def shape_of(shape: models.Shape) -> Shape:
 
 
 @lru_cache(maxsize=64)
-def _horizontal(diameter: float, length: float, end: heads.Head | None) -> Shape:
+def _horizontal(diameter: float, length: float, end: Hashable) -> Shape:
     """Return a cylinder that lies; made once for tanks that are alike, since some ends take numbers."""
-    return horizontal_cylinder(diameter, length, end)
+    return horizontal_cylinder(diameter, length, cast("heads.Head | None", end))
 
 
 def _head(said: object, diameter: float) -> heads.Head | None:

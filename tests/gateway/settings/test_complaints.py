@@ -50,8 +50,7 @@ IN_A_TANK = [
     ("suction: 0.25 m", "suction: ^2.00 m", "the suction level is not below the brim of 2 m"),
     # shapes
     ("form: vertical cylinder", "form: ^barrel", "`barrel` is no form; expected one of vertical cylinder, "),
-    ("form: vertical cylinder", "form: ^sphere", "`sphere` is not yet supported"),
-    ("shape: {form: vertical cylinder, ", "shape: ^{form: rectangular, ", "a rectangular has length, width and height"),
+    ("shape: {form: vertical cylinder, ", "shape: ^{form: rectangular, ", "a rectangular has length, width, height"),
     ("diameter: 1.60 m", "diameter: ^0 m", "expected more than nothing"),
     # ways to sense
     ("senses: distance", "senses: ^smell", "`smell` is no way to sense; expected one of level, distance, "),
@@ -113,6 +112,43 @@ IN_A_TANK = [
     ("topic: farm/pump", "topic: farm/pump, expiry: ^10", "`10` needs a unit; expected a time such as `10 s`"),
     ("topic: farm/pump", "topic: farm/pump, qos: ^2", "`2`: expected 0 or 1"),
     ("topic: farm/pump", "topic: farm/pump, retain: ^yes", "`yes`: expected true or false"),
+    # ways to sense, shapes, and levels from several sensors
+    ("{form: vertical cylinder, ", "^{form: sphere, ", "a sphere has diameter"),
+    ("height: 2.20 m}", "height: 2.20 m, bottom: ^{form: conical}}", "a conical head needs its `depth`"),
+    (
+        "{form: vertical cylinder, ",
+        "^{bottom: 1 m, form: vertical cylinder, ",
+        "the `bottom` of a vertical cylinder is `{form: conical",
+    ),
+    ("{form: vertical", "^{bottom: {form: conical, depth: 9 m}, form: vertical", "the bottom alone is 9 m deep"),
+    (
+        "height: 2.20 m}",
+        "height: 2.20 m, bottom: {form: flat, ^dpeth: 9 m}}",
+        "`dpeth` is not known here; did you mean",
+    ),
+    ("level: head", "level: {take: middle, of: [head, ^haed]}", "`haed` is no sensor of this tank"),
+    ("level: head", "level: {take: middle, of: [head, ^float]}", "`float` is a contact and gives no level"),
+    (
+        "level: head",
+        "level: {take: ^median, of: [head, head]}",
+        "`median` is no way to combine; expected one of middle",
+    ),
+    ("level: head", "level: {take: first, of: [head, ^head]}", "`head` stands here twice"),
+    ("level: head", "level: {take: first, of: ^[head]}", "expected more"),
+    (
+        "level: head",
+        "level: {take: first, of: [head, head2], ^neeed: 1}",
+        "`neeed` is not known here; did you mean `need`?",
+    ),
+    ("senses: distance, unit: mm", "senses: echo time, unit: ^mm", "`mm` is no unit of a time"),
+    ("senses: distance, unit: mm", "senses: ^echo time", "`temperature` is missing: the name of a sensor, or a value"),
+    ("unit: mm, ", "unit: mm, ^oscillator: {at: 1 kHz, total: 1 pF}, ", "`distance` does not use `oscillator`"),
+    ("unit: mm, ", "unit: mm, buffers: ^true, ", "a device that stores its readings must send their `time`"),
+    ("unit: mm, ", "unit: mm, time: ^{field: /ts, as: unix s}, ", "`field` is missing: where beside its time"),
+    ("unit: mm, ", "unit: mm, field: /mm, time: {field: /ts, as: ^epoch}, ", "`epoch` is no form of time"),
+    ("unit: mm, ", "unit: mm, senml: a, ^field: /a, ", "a SenML pack has its own order"),
+    ("unit: mm, ", "unit: mm, despike: ^2, ", "`2`: expected 3 or more"),
+    ("unit: mm, ", "unit: mm, fastest: ^20 mm, ", "`20 mm` is a length; expected a rate of change of level"),
     # topics that come back
     ("topic: farm/pump", "topic: ^brimward/farm/x", "`brimward/farm/…` are the gateway's own topics"),
     ("topic: farm/float", "topic: ^brimward/farm", "`brimward/farm/…` are the gateway's own topics"),
