@@ -129,14 +129,16 @@ def bounded(level: Combined, floats: Sequence[Float]) -> Combined:
         return level
     if low > high:
         return Combined(None, Fault.FAILED, Status.FAILURE, f"at least {low:g} m and at most {high:g} m cannot both be")
-    told = f"only known: {_range(low, high)}"
+    told = f"only known: {range_of(Bounds(low, high))}"
     status = worse((level.status, level.reason), (Status.OUT_OF_SPECIFICATION, told))
     if level.fault is not Fault.NONE:
         status = Status.OUT_OF_SPECIFICATION, f"{level.reason}; {told}, by the floats"
     return Combined(Bounds(low, high), Fault.NONE, *status)
 
 
-def _range(low: float, high: float) -> str:
+def range_of(known: Bounds) -> str:
+    """Return bounds for people."""
+    low, high = known
     ends = [f"at least {low:g} m"] if math.isfinite(low) else []
     return " and ".join([*ends, *([f"at most {high:g} m"] if math.isfinite(high) else [])])
 

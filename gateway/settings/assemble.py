@@ -136,7 +136,6 @@ def sensor_plan(site: models.Site, tank: str | None, name: str, sensor: Sensor) 
     unit = sensor.unit or SENSES[sensor.senses].unit
     scale, zero, _ = linear(unit) if unit else (1.0, 0.0, Dimension.NUMBER)
     built = None if contact else method_of(sensor, surroundings(site, tank))
-    calibration = sensor.calibration
     return SensorPlan(
         name=full(tank, name),
         topic=sensor.topic,
@@ -150,7 +149,7 @@ def sensor_plan(site: models.Site, tank: str | None, name: str, sensor: Sensor) 
         unit=unit,
         words=_words(sensor) if contact else {},
         raw_range=_range(sensor),
-        covers=Covered(*calibration.covers) if calibration and calibration.covers else None,
+        covers=_covers(sensor),
         fastest=sensor.fastest,
         frozen_after=sensor.frozen_after,
         despike=sensor.despike or 0,
@@ -184,6 +183,15 @@ def surroundings(site: models.Site, tank: str | None) -> Surroundings:
         in_a_tank=owner is not None,
         sensor=sensor,
     )
+
+
+def _covers(sensor: Sensor) -> Covered | None:
+    """Return what a probe reaches: as said, or as its dimensions have it."""
+    said = None if sensor.calibration is None else sensor.calibration.covers
+    if said is not None:
+        return Covered(said[0], said[1])
+    low = sensor.mounted_at or 0.0
+    return None if sensor.probe is None else Covered(low, low + sensor.probe.length)
 
 
 def _words(sensor: Sensor) -> dict[str, str]:
