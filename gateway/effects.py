@@ -5,6 +5,8 @@ Each effect carries the steady time `t` and the wall time `at` (UTC, ns since 19
 
 from typing import Any, NamedTuple
 
+from rules.model import Bounds
+
 
 class Command(NamedTuple):
     """An actuator is to be put into a state: the message that does it, and why.
@@ -55,12 +57,15 @@ class RuleChange(NamedTuple):
 
 
 class Value(NamedTuple):
-    """A tank's level has been measured, or has ceased to be known. In m, share of the brim, m3, and m3/s (net)."""
+    """A tank's level has been measured, exactly or within bounds, or has ceased to be known.
+
+    In m, share of the brim, m3, and m3/s (net).
+    """
 
     t: int
     at: int
     tank: str
-    level: float | None
+    level: float | Bounds | None
     share: float | None
     volume: float | None
     flow: float | None

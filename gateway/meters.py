@@ -49,7 +49,7 @@ class Meters:
         self._due: list[tuple[int, int]] = []  # one entry a sensor at most; an entry may be too early, never too late
         self._queued: list[int | None] = [None] * len(self.sensors)
         self._pumps = {pump: tank for tank in self.tanks for pump in tank.plan.pumps}
-        self._source = plan.source
+        self._by_name = {tank.plan.name: tank for tank in self.tanks}
 
     # ---- who hears what -------------------------------------------------------------------------------------------
 
@@ -209,8 +209,8 @@ class Meters:
         for name, slot in place.slots:
             changes.append((slot, tank.quantity(name)))
         found, brim = tank.measured, tank.plan.brim
-        level = found.level if isinstance(found.level, float) else None
-        share = level / brim if level is not None and brim else None
+        level = None if isinstance(found.level, str) else found.level
+        share = level / brim if isinstance(level, float) and brim else None
         status = found.status.value
         effects.append(Value(t, wall, tank.plan.name, level, share, found.volume, found.flow, status, found.reason))
 
@@ -231,8 +231,19 @@ class Meters:
 
     def readings(self, name: str, offset: int) -> list[dict[str, Any]]:
         """Return the readings that a signal rests on, by its full name; none for what is no sensor's."""
-        indices = [self._index[one] for one in self._source.get(name, (name,)) if one in self._index]
+        indices = [self._index[one] for one in self._sources(name) if one in self._index]
         return [told for index in indices if (told := _reading(self.sensors[index], offset)) is not None]
+
+    def _sources(self, name: str) -> tuple[str, ...]:
+        """Return the sensors behind a signal: itself, or those of its tank, with the floats where they count."""
+        if name in self._index:
+            return (name,)
+        where, _, what = name.partition(".")
+        tank = self._by_name.get(where)
+        if tank is None or what not in QUANTITIES:
+            return ()
+        exact = isinstance(tank.measured.level, float)
+        return tank.plan.sensors if exact else (*tank.plan.sensors, *tank.plan.floats)
 
     # ---- saving ---------------------------------------------------------------------------------------------------
 

@@ -27,11 +27,3 @@ class PlantPlan:
     sensors: tuple[SensorPlan, ...] = ()
     tanks: tuple[TankPlan, ...] = ()
     commands: Mapping[str, CommandPlan] = field(default_factory=dict)
-
-    @property
-    def source(self) -> dict[str, tuple[str, ...]]:
-        """Which sensors a tank's own quantities come from, by full name."""
-        signals = [decl.name for decl in self.site.signals]
-        sensors = {sensor.name for sensor in self.sensors}
-        tanks = {tank.name: (*tank.sensors, *tank.floats) for tank in self.tanks}
-        return {name: tanks.get(name.partition(".")[0], ()) for name in signals if name not in sensors}

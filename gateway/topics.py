@@ -51,7 +51,7 @@ def rounded(value: float | None, digits: int) -> float | None:
 def tank_told(value: Value, since: int) -> dict[str, Any]:
     """Return a tank's values as they are published: level in m, volume in litres, net flow in litres a second."""
     return {
-        "level_m": rounded(value.level, 4),
+        "level_m": rounded(value.level if isinstance(value.level, float) else None, 4),
         "percent": rounded(None if value.share is None else value.share * 100, 2),
         "volume_l": rounded(None if value.volume is None else value.volume * 1000, 1),
         "flow_l_s": rounded(None if value.flow is None else value.flow * 1000, 4),

@@ -22,6 +22,7 @@ from gateway.examples import example
 from gateway.journal.reader import Reader, Span
 from gateway.link.embedded import EmbeddedBroker
 from gateway.link.messages import LinkNews
+from gateway.measure.combine import range_of
 from gateway.plan import PlantPlan
 from gateway.plant import Plant
 from gateway.recall import recall_at
@@ -130,7 +131,9 @@ class _Demo:
 
     def _level(self, tank: str) -> str:
         value = self.levels.get(tank)
-        return f"level {value.level:.3f} m" if value and value.level is not None else "level unknown"
+        if value is None or value.level is None:
+            return "level unknown"
+        return f"level {value.level:.3f} m" if isinstance(value.level, float) else f"level {range_of(value.level)}"
 
     def _every_two_minutes(self, at: int) -> Iterator[str]:
         minute = at // 120_000_000_000

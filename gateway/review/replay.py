@@ -55,7 +55,7 @@ def record_of(effect: Effect, *, values: bool) -> dict[str, Any] | None:
             facts = {
                 "record": "value",
                 "tank": effect.tank,
-                "level_m": rounded(effect.level, 6),
+                "level_m": rounded(effect.level if isinstance(effect.level, float) else None, 6),
                 "volume_l": rounded(None if effect.volume is None else effect.volume * 1000, 3),
                 "flow_l_s": rounded(None if effect.flow is None else effect.flow * 1000, 4),
                 "status": effect.status,

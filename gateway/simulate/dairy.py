@@ -74,7 +74,7 @@ def _mend(devices: dict[str, Device]) -> None:
 
 
 INCIDENTS = (
-    Incident(11 * MINUTE, "a rat bites through the wire of the wash sump's transmitter", _cut),
+    Incident(7.5 * MINUTE, "a rat bites through the wire of the wash sump's transmitter", _cut),
+    Incident(11 * MINUTE, "somebody mends the wire", _mend),
     Incident(12 * MINUTE, "a shower of rain fills the cistern for four minutes", lambda _: None),
-    Incident(15 * MINUTE, "somebody mends the wire", _mend),
 )
