@@ -8,6 +8,7 @@ import sys
 
 import typer
 
+from gateway.cli.calibrate import calibrate_command
 from gateway.cli.check import check_command
 from gateway.cli.convert import convert_command
 from gateway.cli.demo import demo_command
@@ -32,6 +33,7 @@ app.command("run")(run_command)
 app.command("demo")(demo_command)
 app.command("listen")(listen_command)
 app.command("convert")(convert_command)
+app.command("calibrate")(calibrate_command)
 app.command("record")(record_command)
 app.command("replay")(replay_command)
 app.command("why")(why_command)

@@ -10,12 +10,14 @@ import typer
 from gateway.cli.common import AsJson, SiteArgument, named, print_json
 from gateway.connect import link_options
 from gateway.link.tap import Heard, Tap
+from gateway.measure.combine import range_of
 from gateway.measure.payloads.payload import shown_payload
 from gateway.measure.sensor import Sensor
 from gateway.plan import PlantPlan
 from gateway.settings.assemble import plant_plan
 from gateway.settings.load import load
 from gateway.topics import moment, rounded
+from rules.model import Bounds, saved
 
 
 def listen_command(
@@ -52,6 +54,7 @@ class _Ear:
         by_name = {one.name: one for one in plan.sensors}
         chosen = list(by_name.values()) if only is None else [by_name[named(only, by_name, "sensor")]]
         self.sensors = [Sensor(one) for one in chosen]
+        self.units = {decl.name: decl.dimension.unit for decl in plan.site.signals if decl.dimension is not None}
         self.zone = ZoneInfo(zone)
         self.as_json = as_json
         self.own = own
@@ -79,26 +82,40 @@ class _Ear:
             self._print({"topic": heard.topic, "note": "matches nothing"}, heard)
 
     def _show_reading(self, sensor: Sensor, heard: Heard) -> None:
+        before = sensor.no_news
         sensor.take(time.time_ns(), heard.topic, heard.payload, retained=heard.retained)
+        if sensor.no_news is not None and sensor.no_news is not before:
+            self._print({"sensor": sensor.plan.name, "topic": heard.topic, "note": sensor.no_news.reason}, heard)
+            return
         last = sensor.last
         if heard.topic != sensor.plan.topic or last is None or (heard.retained and not sensor.on_change):
             kind = "retained: not a live reading" if heard.topic == sensor.plan.topic else "sign of life"
             self._print({"sensor": sensor.plan.name, "topic": heard.topic, "note": kind}, heard)
             return
         value = rounded(last.value, 4) if isinstance(last.value, float) else last.value
+        clock = None if sensor.ages is None else sensor.ages.offset
         facts = {"sensor": sensor.plan.name, "raw": last.raw, "unit": sensor.plan.unit, "value": value}
-        self._print({**facts, "status": last.status.value, "reason": last.reason}, heard)
+        facts |= {"status": last.status.value, "reason": last.reason, "clock_s": clock and round(clock / 1e9, 3)}
+        self._print(facts, heard)
 
     def _print(self, facts: dict[str, Any], heard: Heard) -> None:
         payload = shown_payload(heard.payload)
         if self.as_json:
-            print_json({"at": moment(time.time_ns()), "topic": heard.topic, "payload": payload, **facts})
+            plain = {key: saved(value) for key, value in facts.items()}
+            print_json({"at": moment(time.time_ns()), "topic": heard.topic, "payload": payload, **plain})
             return
         clock = f"{datetime.now(UTC).astimezone(self.zone):%H:%M:%S}"
         if "note" in facts:
             typer.echo(f"{clock}  {facts.get('sensor', heard.topic)}  {payload!r}  {facts['note']}")
             return
-        value = facts["value"]
-        shown = f"{value:.4f} m" if isinstance(value, float) else value or "no value"
         reason = f": {facts['reason']}" if facts["reason"] else ""
-        typer.echo(f"{clock}  {facts['sensor']}  {payload}  → {shown}  {facts['status']}{reason}")
+        behind = f"  its clock: {-facts['clock_s']:+.1f} s" if facts["clock_s"] else ""
+        shown = _shown(facts["value"], self.units.get(facts["sensor"], ""))
+        typer.echo(f"{clock}  {facts['sensor']}  {payload}  → {shown}  {facts['status']}{reason}{behind}")
+
+
+def _shown(value: Any, unit: str) -> str:
+    """Return a value for people: a number, what is known of one, or a word."""
+    if isinstance(value, float):
+        return f"{value:.4f} {unit}" if unit == "m" else f"{value:.6g} {unit}"
+    return range_of(value) if isinstance(value, Bounds) else value or "no value"

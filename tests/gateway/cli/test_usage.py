@@ -11,7 +11,8 @@ from lived import copy_of, live, night, run
 from gateway.examples import example
 
 COMMANDS = [
-    ["check"], ["run"], ["demo"], ["listen"], ["convert"], ["record"], ["replay"], ["why"], ["journal", "list"],
+    ["check"], ["run"], ["demo"], ["listen"], ["convert"], ["calibrate"], ["record"], ["replay"], ["why"],
+    ["journal", "list"],
 ]  # fmt: skip
 
 # What each command needs after its site, and never gets to where the site cannot be used.
@@ -19,6 +20,7 @@ NEEDS = {
     "run": [],
     "listen": [],
     "convert": ["a.b", "1"],
+    "calibrate": ["a.b"],
     "record": ["-o", "/nowhere/x"],
     "replay": ["--messages", "/dev/null"],
     "why": ["x"],
