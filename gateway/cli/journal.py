@@ -17,7 +17,7 @@ from gateway.settings.assemble import plant_plan
 from gateway.settings.load import load
 from gateway.topics import moment
 
-KINDS = ("command", "reason", "rule", "sensor", "note", "gateway", "reading")
+KINDS = ("command", "reason", "rule", "sensor", "volumes", "pump flow", "note", "gateway", "reading")
 
 MOST = 1_000_000  # rows; more at once is a matter for a program, with --from and --to
 
@@ -97,7 +97,7 @@ class _Rows:
         if actuator is not None:
             return (actuator, *(rule.name for rule in plan.site.rules if rule.actuator == actuator))
         names = [*(one.name for one in plan.sensors), *plan.commands, *(rule.name for rule in plan.site.rules)]
-        return tuple(name for name in names if name.startswith(f"{tank}."))
+        return (tank or "", *(name for name in names if name.startswith(f"{tank}.")))
 
     def _readings(self, tank: str | None) -> list[Row]:
         chosen = [one for one in self.plant.meters.sensors if tank is None or one.plan.name.startswith(f"{tank}.")]
@@ -126,6 +126,9 @@ def _of_event(row: EventRow) -> Row:
     return row.at, facts, f"gateway  {line}" + (f": {reason}" if reason else "")
 
 
+_VOLUMES = (("into", "in"), ("out", "out"), ("spilled", "spilled"))
+
+
 def _of_effect(row: EffectRow) -> Row:
     data, about = row.data, row.subject
     facts = {"record": row.kind, "about": about, **{key: value for key, value in data.items() if key != "because"}}
@@ -141,6 +144,11 @@ def _of_effect(row: EffectRow) -> Row:
         case "sensor":
             reason = f": {data['reason']}" if data["reason"] else ""
             line = f"sensor   {about} is {data['status']}{reason}"
+        case "volumes":
+            litres = ", ".join(f"{data[key] * 1000:.0f} l {word}" for key, word in _VOLUMES)
+            line = f"volumes  {about} {data['period']} {data['name']}: {litres}"
+        case "pump flow":
+            line = f"pump     {about} took {data['flow'] * 1000:.3g} l/s in this run"
         case _:
             line = f"note     {about}: {data['text']}"
     return row.at, facts, line

@@ -20,6 +20,7 @@ from rules.model import Bounds, Fault, Signal, Value, restored, saved
 SECOND = 1_000_000_000
 CONTRADICTS_AFTER = 60 * SECOND  # a float hangs a little, and tells seldom
 CONTRADICTS_BY = 0.03  # m, where the settings do not say what agrees
+BEYOND = 0.01  # m; so far a level may lie outside the tank by noise alone
 NEVER = 1e9  # s; thirty years: what time_to_brim is while the level does not rise
 
 
@@ -61,6 +62,11 @@ class Measured(NamedTuple):
     inflow: float | None
     status: Status
     reason: str | None
+
+
+def _beyond(level: float, height: float) -> str:
+    where = "below the bottom" if level < 0 else f"above the tank's height of {height:g} m"
+    return f"{level:.3f} m is {where}"
 
 
 UNKNOWN = Measured(None, Fault.AWAITED, None, None, None, None, Status.FAILURE, None)
@@ -140,6 +146,8 @@ class Tank:
         if shape is None:
             self.measured = Measured(value, Fault.NONE, None, rise, None, None, status, reason)
             return []
+        if not -BEYOND <= value <= shape.height + BEYOND:
+            status, reason = worse((status, reason), (Status.OUT_OF_SPECIFICATION, _beyond(value, shape.height)))
         flow = inflow = None
         if rise is not None:
             flow = rise * shape.area(slope.mean)

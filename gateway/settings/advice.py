@@ -5,6 +5,7 @@ from collections.abc import Iterator
 from gateway.plan import PlantPlan
 from gateway.settings.models import Site
 from gateway.settings.names import full, parts
+from gateway.settings.sensing import probe_of
 from gateway.settings.units import SECOND
 from rules.conditions.terms import constant
 from rules.conditions.tree import And, AtLeast, Comparison, Condition, Held, Name, Not, Or, Relation
@@ -35,6 +36,9 @@ def _about_sensors(site: Site) -> Iterator[str]:
             if silent is not None and every is not None and silent <= every:
                 told = f"counts as silent after {silent / SECOND:g} s, though it sends every {every / SECOND:g} s"
                 yield f"{full(tank, name)}: {told}; it is unknown between readings"
+            warning = None if sensor.probe is None else probe_of(sensor).warning
+            if warning is not None:
+                yield f"{full(tank, name)}: {warning}"
 
 
 def _about_actuators(site: Site, plan: PlantPlan) -> Iterator[str]:

@@ -199,3 +199,15 @@ def test_a_contradiction_of_a_float_counts_after_a_minute() -> None:
     for second, status in ((0, Status.GOOD), (59, Status.GOOD), (60, Status.OUT_OF_SPECIFICATION)):
         tank.update(second * S, second * S, [member], [Float("t.f", 1.9, wet=True)])
         assert tank.measured.status is status
+
+
+@pytest.mark.parametrize(
+    ("level", "told"), [(-0.02, "-0.020 m is below the bottom"), (3.02, "above the tank's height of 3 m")]
+)
+def test_a_level_outside_the_tank_is_out_of_specification(level: float, told: str) -> None:
+    """Usable all the same: it may stand above its rim, or the sensor may be wrong."""
+    tank = tank_of()
+    know(tank, 0, level)
+    assert tank.measured.status is Status.OUT_OF_SPECIFICATION
+    assert told in (tank.measured.reason or "")
+    assert tank.quantity("level").value == level

@@ -103,3 +103,13 @@ def test_a_folder_that_cannot_be_read_is_status_2(tmp_path: Path) -> None:
     ran = run("check", tmp_path / "nowhere")
     assert (ran.status, ran.out) == (2, "")
     assert "there is no site.yaml here; a site is a folder that holds one" in ran.err
+
+
+def test_a_probe_in_a_liquid_that_is_neither_conductor_nor_insulator_is_risky(tmp_path: Path) -> None:
+    """Neither of the two models holds; a calibration does."""
+    site = copy_of("coolant-sump", tmp_path)
+    tank = site / "tanks" / "sump.yaml"
+    tank.write_text(tank.read_text("utf-8").replace("conductivity: 0.3 S/m", "conductivity: 0.00004 S/m"), "utf-8")
+    told = [line for line in run("check", site).out.splitlines() if line.startswith("risky: sump.rod: ")]
+    assert len(told) == 1
+    assert "calibrat" in told[0]

@@ -6,6 +6,9 @@ from pathlib import Path
 import pytest
 from lived import copy_of, live, night, run
 
+from gateway.cli.journal import _of_effect
+from gateway.journal.records import EffectRow
+
 UNIT = "condensate-drum.cooling-unit"
 
 
@@ -103,7 +106,10 @@ def test_the_newest_are_kept_when_there_are_too_many(site: Path) -> None:
 @pytest.mark.parametrize(
     ("options", "said"),
     [
-        (["--kind", "weather"], "`weather` is no kind; known: command, reason, rule, sensor, note, gateway, reading"),
+        (
+            ["--kind", "weather"],
+            "`weather` is no kind; known: command, reason, rule, sensor, volumes, pump flow, note, gateway, reading",
+        ),
         (["--tank", "vat"], "`vat` is no tank of this site; known: cistern, condensate-drum, header-tank, wash-sump"),
         (
             ["--actuator", "coolin-unit"],
@@ -147,3 +153,16 @@ def test_a_damaged_journal_is_told(tmp_path: Path) -> None:
         ran = run(*command)
         assert (ran.status, ran.out) == (2, "")
         assert "journal.db: the journal cannot be read: " in ran.err
+
+
+def test_volumes_and_a_pumps_own_flow_are_told_in_litres() -> None:
+    """Each with its tank or pump."""
+    volumes = {"period": "hour", "name": "2026-05-01T12+0200", "into": 0.36, "out": 0.1, "spilled": 0.0}
+    rows = [
+        EffectRow(1, 1, 1, "volumes", "sump", volumes),
+        EffectRow(1, 1, 1, "pump flow", "sump.pump", {"flow": 0.0031}),
+    ]
+    assert [_of_effect(row)[2] for row in rows] == [
+        "volumes  sump hour 2026-05-01T12+0200: 360 l in, 100 l out, 0 l spilled",
+        "pump     sump.pump took 3.1 l/s in this run",
+    ]
