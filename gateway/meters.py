@@ -184,8 +184,8 @@ class Meters:
                 self._status[index] = status
                 effects.append(SensorChange(t, wall, sensor.plan.name, status.value, sensor.reason))
             tanks += self._tanks_of[index]
-        for tank in tanks if len(tanks) < 2 else dict.fromkeys(tanks):
-            self._measure(t, wall, self._places[tank], changes, effects)
+        for number in tanks if len(tanks) < 2 else dict.fromkeys(tanks):
+            self._measure(t, wall, self._places[number], changes, effects)
         return changes
 
     def _felt(self, index: int) -> None:
@@ -197,10 +197,14 @@ class Meters:
     def _measure(self, t: int, wall: int, place: _Place, changes: Changes, effects: list[Effect]) -> None:
         """Bring a tank up to what its sensors say."""
         tank = place.tank
-        if place.only is not None:
-            sensor = place.only
-            value, fault = sensor.signal
-            ended = tank.know(t, wall, value, fault, sensor.status, sensor.reason)
+        only = place.only
+        if only is not None:
+            value, fault = only.signal
+            used = only.used
+            if fault is Fault.NONE and used is not None:  # nearly always
+                ended = tank.know(t, wall, value, fault, used.status, used.reason)
+            else:
+                ended = tank.know(t, wall, value, fault, only.status, only.reason)
         else:
             members = [self._member(index) for index in place.members]
             ended = tank.update(t, wall, members, self._floats(place))

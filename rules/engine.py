@@ -8,7 +8,8 @@ Commands are netted: at most one per actuator and step.
 """
 
 import heapq
-from bisect import bisect_left, bisect_right
+import math
+from bisect import bisect_left
 from collections.abc import Iterable
 from typing import Any, assert_never
 
@@ -22,6 +23,8 @@ from rules.grace import Grace
 from rules.model import ActuatorDecl, Fault, Rank, Signal, SiteDecl, Value
 from rules.rule import Rule, Side, earlier
 
+NOWHERE = (math.inf, -math.inf)  # the edges of a signal that stands between none
+NEAR = 2 * 10.0**-DIGITS
 MOST_PASSES = 8  # rules that still move actuators after so many passes at one instant chase each other
 
 _KNOWN = frozenset({Side.FALSE, Side.TRUE})
@@ -55,7 +58,7 @@ class Engine:
         self._actuator_of = [places[decl.actuator] for decl in site.rules]
         self._readers = self._index()
         self._edges = [self._edges_of(slot) for slot in range(len(self.board.values))]
-        self._between: list[int | None] = [None] * len(self._edges)  # between which edges each signal stands
+        self._between = [NOWHERE] * len(self._edges)  # between which edges each signal stands
         self._heap: list[tuple[int, int]] = []  # (deadline, rule), entries of superseded deadlines included
         self._fallback = Fallback.AS_FOUND
         self._proven = False
@@ -158,22 +161,27 @@ class Engine:
 
     def _crossed(self, slot: int, value: Value) -> bool:
         """Return whether a changed signal can change any truth: not while it stays between the same two edges."""
-        place = self._place(slot, value)
-        if place is not None and place == self._between[slot]:
-            return False
-        self._between[slot] = place
+        low, high = self._between[slot]
+        if isinstance(value, float):
+            if low < value < high:
+                return False
+            self._between[slot] = self._around(slot, value)
+        else:
+            self._between[slot] = NOWHERE
         return True
 
-    def _place(self, slot: int, value: Value) -> int | None:
-        """Return between which edges a value stands, on an edge being a place of its own; None where that says nothing.
+    def _around(self, slot: int, value: float) -> tuple[float, float]:
+        """Return the two edges between which a value stands: while it stays there, no comparison with it changes.
 
-        While a value stays in its place, no comparison with it changes.
+        Values are compared with `DIGITS` digits, so what is nearer to an edge than that is not between any.
         """
         edges = self._edges[slot]
-        if edges is None or not isinstance(value, float):
-            return None
-        value = round(value, DIGITS)
-        return bisect_left(edges, value) + bisect_right(edges, value)
+        if edges is None:
+            return NOWHERE
+        place = bisect_left(edges, value)
+        low = edges[place - 1] + NEAR if place else -math.inf
+        high = edges[place] - NEAR if place < len(edges) else math.inf
+        return (low, high) if low < value < high else NOWHERE
 
     def _prove(self, t: int, effects: list[Effect]) -> None:
         """Tell every actuator its state, again if need be, now that the link works."""
@@ -213,7 +221,7 @@ class Engine:
         self._fallback, self._proven, self._settled_due = Fallback.AS_FOUND, False, None
         self._outage_due = t + self.site.link_tolerance
         self.board.forget()
-        self._between = [None] * len(self._edges)
+        self._between = [NOWHERE] * len(self._edges)
         for rule in self._rules:
             rule.begin(t, self.now)
         for actuator in self._actuators:
@@ -374,7 +382,7 @@ class Engine:
         self._outage_due, self._settled_due = saved["outage_due"], saved["settled_due"]
         self._grace.restore(saved["grace"])
         self.board.restore(saved["board"])
-        self._between = [self._place(slot, value) for slot, value in enumerate(self.board.values)]
+        self._between = [NOWHERE] * len(self._edges)
         for rule, state in zip(self._rules, saved["rules"], strict=True):
             rule.restore(state)
         for one, (decided, sent, since) in zip(self._actuators, saved["actuators"], strict=True):

@@ -97,7 +97,7 @@ class Slope:
             return
         times, values, first = self._times, self._values, self._first
         self._origin, self._sums = times[first], _NOTHING
-        self._anew_in = len(times) - first + 8
+        self._anew_in = 4 * (len(times) - first) + 8
         for index in range(first, len(times)):
             self._count(times[index], values[index], 1)
 
