@@ -5,12 +5,15 @@ from typing import Annotated
 import typer
 
 from gateway.cli.common import SiteArgument
+from gateway.measure.probe import Probe, Regime
 from gateway.plan import PlantPlan
 from gateway.settings.advice import advise
 from gateway.settings.assemble import plant_plan
 from gateway.settings.complaint import SettingsError
 from gateway.settings.load import load
 from gateway.settings.models import Site
+from gateway.settings.names import full, parts
+from gateway.settings.sensing import probe_of
 from rules.model import RuleDecl
 
 
@@ -49,8 +52,27 @@ def _summarise(settings: Site, plan: PlantPlan, *, verbose: bool) -> None:
     }
     counts = ", ".join(f"{count} {thing}{'' if count == 1 else 's'}" for thing, count in things.items())
     typer.echo(f"{settings.name}: {counts}; all of it can be used")
-    for rule in site.rules if verbose else ():
+    if not verbose:
+        return
+    for tank, part in parts(settings):
+        for name, sensor in part.sensors.items():
+            if sensor.probe is not None:
+                typer.echo(_probe_told(full(tank, name), probe_of(sensor)))
+    for rule in site.rules:
         typer.echo(_told(rule))
+
+
+_REGIMES = {
+    Regime.CONDUCTOR: "the liquid conducts, so the coating alone counts",
+    Regime.DIELECTRIC: "the liquid is a dielectric",
+    Regime.NEITHER: "the liquid is neither a conductor nor a dielectric at this frequency",
+}
+
+
+def _probe_told(name: str, probe: Probe) -> str:
+    """Return what the dimensions of a probe come to."""
+    ends = f"{probe.dry * 1e12:.1f} pF dry, {probe.wet * 1e12:.1f} pF wet"
+    return f"  {name}: {ends}, {probe.picofarads_per_millimetre:.3g} pF/mm; {_REGIMES[probe.regime]}"
 
 
 def _told(rule: RuleDecl) -> str:

@@ -113,3 +113,10 @@ def test_a_probe_in_a_liquid_that_is_neither_conductor_nor_insulator_is_risky(tm
     told = [line for line in run("check", site).out.splitlines() if line.startswith("risky: sump.rod: ")]
     assert len(told) == 1
     assert "calibrat" in told[0]
+
+
+def test_what_a_probes_dimensions_come_to_is_told() -> None:
+    """Its ends, its slope, and which of the two models applies."""
+    told = run("check", "-v", example("coolant-sump")).out.splitlines()
+    assert told[1].startswith("  sump.rod: ")
+    assert told[1].endswith("pF/mm; the liquid conducts, so the coating alone counts")
