@@ -6,6 +6,7 @@ committed. It never waits for disk, name lookup, encryption or a client of ours.
 """
 
 import contextlib
+import gc
 import logging
 import os
 import select
@@ -101,6 +102,8 @@ class Service:
         """Run until `stop`; raise JournalError when the journal cannot be used at all."""
         sys.setswitchinterval(SWITCH_S)
         self._begin()
+        gc.collect()
+        gc.freeze()  # what the site is made of stays for good; looking through it again and again would delay commands
         try:
             while not self._stopping.is_set():
                 self._turn()
