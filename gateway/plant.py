@@ -78,6 +78,7 @@ class Plant:
                 assert_never(event)
 
     def _start(self, event: Start, effects: list[Effect]) -> None:
+        self._control(Passed(self.t), effects)  # so long the life before has lasted, whatever woke it
         self.t, self.offset, self._lose_due = event.t, event.offset, None
         self.meters.begin(event.t)
         self._control(Started(event.t), effects)

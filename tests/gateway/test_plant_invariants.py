@@ -168,3 +168,23 @@ def test_every_time_is_told_exactly_whatever_wakes_the_plant(events: list[Event]
         for effect in effects:
             assert before <= effect.t <= plant.t or isinstance(effect, Note)
         before = plant.t
+
+
+def test_how_long_a_life_has_lasted_does_not_depend_on_what_woke_the_plant() -> None:
+    """What is left of the grace, and how long unknown has lasted, goes on from the last event, whatever it was."""
+    begin = 1000 * SECOND
+    before: list[Event] = [
+        Start(begin, 0),
+        LinkUp(begin),
+        Message(begin, "dairy/cistern/mm", b"600"),
+        LinkDown(begin + 3 * SECOND, "the broker went away"),
+        LinkUp(begin + 6 * SECOND),
+    ]
+    after: list[Event] = [Wake(begin + 12 * SECOND), Start(5 * SECOND, 0), LinkUp(5 * SECOND), Wake(70 * SECOND)]
+    woken = [Wake(begin + second * SECOND) for second in (7, 8, 9, 10, 11)]
+    assert moved(run([*before, *after]))
+    assert moved(run([*before, *after])) == moved(run([*before, *woken, *after]))
+    plant = Plant(PLAN)
+    for event in [*before, *after[:2]]:
+        plant.step(event)
+    assert plant.engine.save()["grace"][0][0] == (5 + 60 - 12) * SECOND
