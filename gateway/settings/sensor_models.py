@@ -1,7 +1,7 @@
 """What a user can write of a sensor, key by key. Values are in SI units and nanoseconds once read."""
 
 import re
-from typing import TYPE_CHECKING, Annotated, Any, ClassVar, Literal
+from typing import TYPE_CHECKING, Annotated, Any, Literal
 
 from pydantic import BeforeValidator, Field, model_validator
 
@@ -55,8 +55,6 @@ Points = Annotated[list[tuple[AnyQuantity, Length]], BeforeValidator(_pairs)]
 
 class Calibration(Part):
     """Pairs of what the sensor said and the level in m; `covers` is what the probe reaches."""
-
-    LATER: ClassVar[frozenset[str]] = frozenset()
 
     points: Points
     fit: Literal["through", "smooth", "least squares"] = "through"
@@ -203,8 +201,6 @@ def _angle(value: object) -> float:
 
 class Sensor(Part):
     """One source of raw readings on one topic."""
-
-    LATER: ClassVar[frozenset[str]] = frozenset()
 
     topic: Topic
     field: PointerText | None = None

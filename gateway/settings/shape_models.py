@@ -1,6 +1,6 @@
 """What a user can write of a tank's inside. Lengths in m once read."""
 
-from typing import TYPE_CHECKING, Annotated, ClassVar, Literal
+from typing import TYPE_CHECKING, Annotated, Literal
 
 from pydantic import BeforeValidator, model_validator
 
@@ -61,8 +61,6 @@ else:
 
 class Shape(Part):
     """The inside of a tank."""
-
-    LATER: ClassVar[frozenset[str]] = frozenset()
 
     form: Annotated[str, known("form", dict.fromkeys(FORMS, True))]
     diameter: Size | None = None
