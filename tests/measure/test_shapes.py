@@ -40,13 +40,20 @@ def test_the_higher_the_fuller(name: str, one: float, other: float) -> None:
     assert shape.volume(0.0) == pytest.approx(0.0, abs=1e-12)
 
 
-@given(NAMES, st.floats(0.001, 1))
+@given(NAMES, st.floats(0.001, 0.999))
 def test_the_level_comes_back_from_its_volume(name: str, share: float) -> None:
-    """To a billionth of the height."""
+    """To a hundred-millionth of the height; at the very top of a round tank the volume says too little of the level."""
     shape = SHAPES[name]
-    assert shape.level(shape.volume(share * shape.height)) == pytest.approx(
-        share * shape.height, abs=1e-8 * shape.height
-    )
+    level = share * shape.height
+    assert shape.level(shape.volume(level)) == pytest.approx(level, abs=1e-8 * shape.height)
+
+
+@given(NAMES, st.floats(0, 1))
+def test_the_volume_comes_back_from_its_level(name: str, share: float) -> None:
+    """From the bottom to the very top."""
+    shape = SHAPES[name]
+    volume = share * shape.volume(shape.height)
+    assert shape.volume(shape.level(volume)) == pytest.approx(volume, abs=1e-9 * shape.volume(shape.height))
 
 
 @given(NAMES, st.floats(0.02, 0.98))
