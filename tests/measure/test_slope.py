@@ -30,11 +30,11 @@ def by_scipy(samples: list[tuple[int, float]], over: int = WINDOW) -> float:
 
 @given(st.lists(st.tuples(st.integers(1, 5000), st.integers(-10, 10)), min_size=20, max_size=200), st.integers(-9, 9))
 def test_it_is_the_least_squares_slope_of_the_window(steps: list[tuple[int, int]], trend: int) -> None:
-    """Readings at any distance, with a ripple of up to 1 mm, which is no spike, on a steady rise or fall."""
+    """Readings at any distance, with a ripple of up to 0.1 mm, too little for a spike, on a steady rise or fall."""
     t, samples = 10**15, []
     for pause, ripple in steps:
         t += max(pause * SECOND // 1000, WINDOW // 240)
-        samples.append((t, trend * 1e-4 * (t - 10**15) / SECOND + ripple * 1e-4))
+        samples.append((t, trend * 1e-4 * (t - 10**15) / SECOND + ripple * 1e-5))
     slope = fed(samples).slope()
     inside = [one for one in samples if one[0] >= samples[-1][0] - WINDOW]
     if (inside[-1][0] - inside[0][0]) * 4 < WINDOW or len(inside) < 3:
